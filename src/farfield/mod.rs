@@ -1,0 +1,3 @@
+//! Array and draw → irradiance at the target.
+
+pub mod map;
