@@ -4,13 +4,27 @@
 //! it, refuses what it cannot mean, and fills every default;
 //! [`Scenario::to_toml`] writes it back with nothing left implicit.
 
+mod bounds;
+mod document;
+mod layout;
+pub mod names;
+pub mod overlap;
+mod overrides;
+mod read;
 pub mod require;
+mod section;
+mod write;
 
 use crate::error::{Place, ScenarioError};
 use std::collections::BTreeMap;
 use std::path::PathBuf;
 
+pub use overlap::elements_overlap;
+pub use overrides::Override;
 pub use require::{Bound, Comparison, Figure, Requirement, Statistic};
+
+/// A commented scenario to begin from, as `facula starter` prints it.
+pub const STARTER: &str = include_str!("starter.toml");
 
 /// A whole scenario.
 #[derive(Debug, Clone, PartialEq)]
@@ -282,7 +296,12 @@ pub enum MethodChoice {
 
 impl Scenario {
     /// An error about `key`, placed where that key (or its section) was written.
-    pub fn error(&self, key: &str, found: impl Into<String>, allowed: impl Into<String>) -> ScenarioError {
+    pub fn error(
+        &self,
+        key: &str,
+        found: impl Into<String>,
+        allowed: impl Into<String>,
+    ) -> ScenarioError {
         let mut name = key;
         let place = loop {
             if let Some(place) = self.source.places.get(name) {

@@ -4,7 +4,10 @@ use crate::quantity::Kind;
 
 /// A figure of merit, in the order of every table.
 #[derive(Debug, Clone, Copy, PartialEq, Eq, PartialOrd, Ord, Hash)]
-#[allow(missing_docs, reason = "each is defined in `figures`, by the key that `key` returns")]
+#[allow(
+    missing_docs,
+    reason = "each is defined in `figures`, by the key that `key` returns"
+)]
 pub enum Figure {
     Strehl,
     StrehlPeak,
