@@ -29,6 +29,9 @@
 pub mod array;
 pub mod error;
 pub mod farfield;
+pub mod figures;
 pub mod perturb;
 pub mod quantity;
 pub mod scenario;
+pub mod study;
+pub mod trials;

@@ -1,3 +1,64 @@
 //! Array and draw → irradiance at the target.
+//!
+//! Every method stands behind [`FarField`] and fills the same map, so that each is
+//! the others' check. [`choose`] picks one for an array and a map.
 
+pub mod choose;
+pub mod closed_form;
+mod direct;
+mod fft;
 pub mod map;
+mod paint;
+pub mod pattern;
+mod quadrature;
+mod sampled;
+mod smooth;
+
+use crate::array::Array;
+use crate::perturb::Draw;
+
+pub use direct::Direct;
+pub use fft::good_length;
+pub use map::{Grid, Map};
+pub use sampled::{Sampled, SampledPlan, cells_across_element};
+
+/// A way to compute the far field.
+#[derive(Debug, Clone, Copy, PartialEq, Eq)]
+pub enum Method {
+    /// The plain sum over elements.
+    Direct,
+    /// One FFT of the painted aperture.
+    Sampled,
+}
+
+impl Method {
+    /// Its name in a scenario.
+    pub fn name(self) -> &'static str {
+        match self {
+            Method::Direct => "direct",
+            Method::Sampled => "sampled",
+        }
+    }
+}
+
+/// An array made ready for any number of draws.
+pub trait FarField: Send + Sync {
+    /// Which method this is.
+    fn method(&self) -> Method;
+    /// Grid of the maps.
+    fn grid(&self) -> Grid;
+    /// A worker with the memory that a trial needs, to be reused from trial to trial.
+    fn worker(&self) -> Box<dyn Worker + '_>;
+}
+
+/// Computes one draw after another.
+pub trait Worker: Send {
+    /// Fill `map` with the irradiance of a draw. `map` has the grid of the method.
+    fn irradiance(&mut self, draw: &Draw, map: &mut Map);
+}
+
+/// The largest angle between a map point and an element's tilt, six deviations of random tilt included.
+fn largest_angle_rad(array: &Array, grid: Grid, random_tilt_rad: f64) -> f64 {
+    let corner = std::f64::consts::FRAC_1_SQRT_2 * grid.width_m() / array.range_m;
+    corner + std::f64::consts::SQRT_2 * (array.largest_tilt_rad() + 6.8 * random_tilt_rad)
+}

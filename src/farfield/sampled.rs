@@ -1,0 +1,295 @@
+//! `sampled`: the aperture painted on a grid, and one pruned two-dimensional FFT.
+//!
+//! The grid pitch Δ = samples_per_spot·D/n makes the transform's bins fall on the
+//! map's pixels. Rows without light need no first pass, and only the map's columns
+//! and rows are kept, so a trial costs (occupied rows + map columns) transforms of
+//! length n rather than 2n.
+//!
+//! Cells hold the mean of the element's field over the cell (covered area at the
+//! edges), and the tilt's phase at the cell's centre. The cell mean multiplies the
+//! transform by sinc(θΔ/λ) per axis, which is divided out; an element's tilt δ moves
+//! that factor to θ − δ, which dividing its amplitude by sinc(δΔ/λ) makes right at
+//! the aim point. What is left is aliasing, weighted by θΔ/λ.
+
+use super::fft::good_length;
+use super::map::{Grid, Map};
+use super::paint::{Cells, paint};
+use super::pattern::{Wavefront, sinc};
+use super::{FarField, Method, Worker};
+use crate::array::Array;
+use crate::perturb::Draw;
+use num_complex::Complex64;
+use rayon::prelude::*;
+use rustfft::{Fft, FftPlanner};
+use std::f64::consts::PI;
+use std::sync::Arc;
+
+/// Grid cells across an element, at least.
+///
+/// An alias reaches the map with the element's pattern out at λ/Δ, so a map that shows
+/// the element's own side lobes needs a finer grid, and one four times as wide as itself.
+pub fn cells_across_element(array: &Array, grid: Grid) -> f64 {
+    let nulls = grid.width_m() / 2.0 / array.range_m * array.element.size_m / array.wavelength_m;
+    if nulls <= 1.0 { 16.0 } else { 24.0 }
+}
+
+/// Columns that one task of the second pass gathers.
+const COLUMNS: usize = 16;
+
+/// Geometry of the painted grid, known before anything is allocated.
+#[derive(Debug, Clone, Copy, PartialEq)]
+pub struct SampledPlan {
+    /// FFT length.
+    pub length: usize,
+    /// Grid pitch in the aperture.
+    pub pitch_m: f64,
+    /// Rows that may hold light.
+    pub rows: usize,
+    /// Bytes of the painted elements, shared by all workers.
+    pub shared_bytes: f64,
+    /// Bytes that each worker needs.
+    pub worker_bytes: f64,
+}
+
+impl SampledPlan {
+    /// Plan for a map, `cells` across an element at least, with tilts of up to
+    /// `largest_tilt_rad`, over which no more than 0.8 rad may pass in a cell.
+    pub fn new(array: &Array, grid: Grid, cells: f64, largest_tilt_rad: f64) -> SampledPlan {
+        let size_m = array.element.size_m;
+        let inside = array.curvature_per_m.abs() * size_m / 2.0;
+        let turns = array.wavenumber() * (largest_tilt_rad + inside) * size_m;
+        let cells = cells.max(turns / 0.8);
+        // n Δ = λ·range/pixel, whatever n.
+        let span_m = array.wavelength_m * array.range_m / grid.pixel_m;
+        let least = (span_m * cells / size_m * (1.0 - 1e-12)).ceil();
+        let length = good_length((least as usize).max(4 * grid.pixels));
+        let pitch_m = span_m / length as f64;
+        let rows = (array.envelope_diameter_m / pitch_m).ceil() as usize + 3;
+        let (half_x, half_y) = array.element.half_extent_m();
+        let box_cells = (2.0 * half_x / pitch_m + 2.0) * (2.0 * half_y / pitch_m + 2.0);
+        SampledPlan {
+            length,
+            pitch_m,
+            rows,
+            shared_bytes: array.len() as f64 * (8.0 * box_cells + 24.0),
+            worker_bytes: 16.0 * (rows as f64 * grid.pixels as f64)
+                + 8.0 * (grid.pixels as f64).powi(2)
+                + 64.0 * array.len() as f64,
+        }
+    }
+}
+
+/// The painted array, ready for any number of draws.
+pub struct Sampled<'a> {
+    array: &'a Array,
+    grid: Grid,
+    plan: SampledPlan,
+    cells: Cells,
+    fft: Arc<dyn Fft<f64>>,
+    /// 1/sinc(θΔ/λ) along one axis of the map.
+    deconvolution: Vec<f64>,
+}
+
+impl std::fmt::Debug for Sampled<'_> {
+    fn fmt(&self, f: &mut std::fmt::Formatter<'_>) -> std::fmt::Result {
+        f.debug_struct("Sampled")
+            .field("plan", &self.plan)
+            .finish_non_exhaustive()
+    }
+}
+
+impl<'a> Sampled<'a> {
+    /// Paint the array; `mean_over_tilt_rad` as in [`Wavefront`].
+    pub fn new(
+        array: &'a Array,
+        grid: Grid,
+        plan: SampledPlan,
+        mean_over_tilt_rad: f64,
+    ) -> Sampled<'a> {
+        let wavefront = Wavefront {
+            curvature_per_m: array.curvature_per_m,
+            mean_over_tilt_rad,
+        };
+        let cell_over_wavelength = plan.pitch_m / array.wavelength_m;
+        Sampled {
+            array,
+            grid,
+            plan,
+            cells: paint(array, plan.pitch_m, wavefront),
+            fft: FftPlanner::new().plan_fft_forward(plan.length),
+            deconvolution: grid
+                .axis_m()
+                .iter()
+                .map(|u| 1.0 / sinc(PI * u / array.range_m * cell_over_wavelength))
+                .collect(),
+        }
+    }
+}
+
+impl FarField for Sampled<'_> {
+    fn method(&self) -> Method {
+        Method::Sampled
+    }
+
+    fn grid(&self) -> Grid {
+        self.grid
+    }
+
+    fn worker(&self) -> Box<dyn Worker + '_> {
+        let pixels = self.grid.pixels;
+        Box::new(SampledWorker {
+            sampled: self,
+            excitation: vec![Excitation::default(); self.array.len()],
+            half_way: vec![Complex64::default(); self.cells.rows.len() * pixels],
+            transposed: vec![0.0; pixels * pixels],
+        })
+    }
+}
+
+/// What drives one element in one trial.
+#[derive(Debug, Clone, Copy, Default)]
+struct Excitation {
+    phasor: Complex64,
+    tilt_x_rad: f64,
+    tilt_y_rad: f64,
+}
+
+struct SampledWorker<'a> {
+    sampled: &'a Sampled<'a>,
+    excitation: Vec<Excitation>,
+    /// After the first pass: [occupied row][map column].
+    half_way: Vec<Complex64>,
+    /// Irradiance by [map column][map row].
+    transposed: Vec<f64>,
+}
+
+/// Buffers of one thread within a pass.
+struct Scratch {
+    line: Vec<Complex64>,
+    fft: Vec<Complex64>,
+}
+
+impl SampledWorker<'_> {
+    fn scratch(&self, lines: usize) -> Scratch {
+        let sampled = self.sampled;
+        Scratch {
+            line: vec![Complex64::default(); lines * sampled.plan.length],
+            fft: vec![Complex64::default(); sampled.fft.get_inplace_scratch_len()],
+        }
+    }
+
+    fn excite(&mut self, draw: &Draw) {
+        let (array, pitch) = (self.sampled.array, self.sampled.plan.pitch_m);
+        let turn = PI * pitch / array.wavelength_m;
+        for (n, excitation) in self.excitation.iter_mut().enumerate() {
+            let tilt_x_rad = array.tilt_x_rad[n] + draw.tilt_x_rad[n];
+            let tilt_y_rad = array.tilt_y_rad[n] + draw.tilt_y_rad[n];
+            let smear = sinc(turn * tilt_x_rad) * sinc(turn * tilt_y_rad);
+            *excitation = Excitation {
+                phasor: Complex64::from_polar(
+                    array.amplitude[n] * draw.amplitude[n] / smear,
+                    array.phase_rad[n] + draw.phase_rad[n],
+                ),
+                tilt_x_rad,
+                tilt_y_rad,
+            };
+        }
+    }
+
+    /// Paint one row of the aperture into `line`, whose negative half wraps around.
+    fn paint_row(&self, row: i64, line: &mut [Complex64]) {
+        let sampled = self.sampled;
+        let (array, pitch) = (sampled.array, sampled.plan.pitch_m);
+        let length = sampled.plan.length as i64;
+        let k = array.wavenumber();
+        line.fill(Complex64::default());
+        for strip in sampled.cells.strips(row) {
+            let n = strip.element;
+            let excitation = &self.excitation[n];
+            if excitation.phasor == Complex64::default() {
+                continue;
+            }
+            let (tilt_x, tilt_y) = (excitation.tilt_x_rad, excitation.tilt_y_rad);
+            let x = strip.first_column as f64 * pitch - array.x_m[n];
+            let y = row as f64 * pitch - array.y_m[n];
+            let mut phasor = excitation.phasor * Complex64::cis(k * (tilt_x * x + tilt_y * y));
+            let step = Complex64::cis(k * tilt_x * pitch);
+            for (offset, cell) in strip.cells.iter().enumerate() {
+                let column = (strip.first_column + offset as i64).rem_euclid(length);
+                line[column as usize] +=
+                    phasor * Complex64::new(f64::from(cell.re), f64::from(cell.im));
+                phasor *= step;
+            }
+        }
+    }
+}
+
+impl Worker for SampledWorker<'_> {
+    fn irradiance(&mut self, draw: &Draw, map: &mut Map) {
+        self.excite(draw);
+        let sampled = self.sampled;
+        let (length, pixels) = (sampled.plan.length, sampled.grid.pixels);
+        let centre = sampled.grid.centre();
+        // Map index → transform bin, negative frequencies at the end.
+        let bin = |index: usize| (index + length - centre) % length;
+
+        let mut half_way = std::mem::take(&mut self.half_way);
+        half_way
+            .par_chunks_mut(pixels)
+            .zip(&sampled.cells.rows)
+            .for_each_init(
+                || self.scratch(1),
+                |scratch, (kept, &row)| {
+                    self.paint_row(row, &mut scratch.line);
+                    sampled
+                        .fft
+                        .process_with_scratch(&mut scratch.line, &mut scratch.fft);
+                    for (index, value) in kept.iter_mut().enumerate() {
+                        *value = scratch.line[bin(index)];
+                    }
+                },
+            );
+
+        let array = sampled.array;
+        let cell_area = sampled.plan.pitch_m * sampled.plan.pitch_m;
+        let scale = (cell_area / (array.wavelength_m * array.range_m)).powi(2);
+        let mut transposed = std::mem::take(&mut self.transposed);
+        transposed
+            .par_chunks_mut(COLUMNS * pixels)
+            .enumerate()
+            .for_each_init(
+                || self.scratch(COLUMNS),
+                |scratch, (block, kept)| {
+                    let first = block * COLUMNS;
+                    let width = kept.len() / pixels;
+                    scratch.line.fill(Complex64::default());
+                    for (source, &row) in half_way.chunks_exact(pixels).zip(&sampled.cells.rows) {
+                        let place = row.rem_euclid(length as i64) as usize;
+                        for column in 0..width {
+                            scratch.line[column * length + place] = source[first + column];
+                        }
+                    }
+                    for (column, (line, kept)) in scratch
+                        .line
+                        .chunks_exact_mut(length)
+                        .zip(kept.chunks_exact_mut(pixels))
+                        .enumerate()
+                    {
+                        sampled.fft.process_with_scratch(line, &mut scratch.fft);
+                        let across = sampled.deconvolution[first + column];
+                        for (index, value) in kept.iter_mut().enumerate() {
+                            let along = sampled.deconvolution[index];
+                            *value = line[bin(index)].norm_sqr() * scale * (across * along).powi(2);
+                        }
+                    }
+                },
+            );
+        for (row, line) in map.irradiance_w_m2.chunks_exact_mut(pixels).enumerate() {
+            for (column, value) in line.iter_mut().enumerate() {
+                *value = transposed[column * pixels + row];
+            }
+        }
+        self.half_way = half_way;
+        self.transposed = transposed;
+    }
+}

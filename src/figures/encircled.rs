@@ -1,0 +1,231 @@
+//! Power in circles about the aim point, from the map's spectrum.
+//!
+//! The power within radius R is Σ Î(f)·R·J₁(2πRf)/f over the spectrum Î of the map, a
+//! band-limited function: no pixel is cut by the circle. Frequencies between the band
+//! limit D/(λ·range) and Nyquist's are faded out, which keeps the circle's ringing
+//! short. The spectrum is first gathered by |f| onto a fine line of bins with cubic
+//! (Lagrange) weights, once per map; then each radius costs one sum over the line.
+
+use crate::farfield::{Map, good_length};
+use num_complex::Complex64;
+use rustfft::{Fft, FftPlanner};
+use std::f64::consts::PI;
+use std::sync::Arc;
+
+/// Bins per frequency step of the padded map's transform.
+const BINS_PER_STEP: f64 = 16.0;
+
+/// Radii at which the whole curve is read.
+pub const RADII: usize = 161;
+
+/// Encircled power for maps of one grid.
+pub struct Encircled {
+    pixels: usize,
+    pixel_m: f64,
+    length: usize,
+    /// Band limit and Nyquist limit, in frequency steps.
+    band_steps: f64,
+    nyquist_steps: f64,
+    fft: Arc<dyn Fft<f64>>,
+    /// Radii of the curve, from 0 to half the window.
+    pub radius_m: Vec<f64>,
+    /// `[radius][bin]` of R·J₁(2πRf)/f.
+    kernels: Vec<f64>,
+    bins: usize,
+}
+
+impl std::fmt::Debug for Encircled {
+    fn fmt(&self, f: &mut std::fmt::Formatter<'_>) -> std::fmt::Result {
+        f.debug_struct("Encircled")
+            .field("length", &self.length)
+            .finish_non_exhaustive()
+    }
+}
+
+/// Memory for one map's spectrum, reused from map to map.
+#[derive(Debug)]
+pub struct Spectrum {
+    rows: Vec<Complex64>,
+    column: Vec<Complex64>,
+    scratch: Vec<Complex64>,
+    /// Spectrum gathered by |f|.
+    line: Vec<f64>,
+}
+
+impl Encircled {
+    /// Prepare for maps of `pixels` a side, `pixel_m` apart, `samples_per_spot` of them a spot.
+    pub fn new(pixels: usize, pixel_m: f64, samples_per_spot: f64) -> Encircled {
+        // Zeros around the map keep the periodic images of its edges a few spots away.
+        let length = good_length(pixels + (6.0 * samples_per_spot).ceil() as usize);
+        let nyquist_steps = (length / 2) as f64;
+        let bins = (nyquist_steps * BINS_PER_STEP) as usize + 3;
+        let half_m = pixels as f64 * pixel_m / 2.0;
+        let radius_m: Vec<f64> = (0..RADII)
+            .map(|index| half_m * index as f64 / (RADII - 1) as f64)
+            .collect();
+        let mut encircled = Encircled {
+            pixels,
+            pixel_m,
+            length,
+            band_steps: length as f64 / samples_per_spot,
+            nyquist_steps,
+            fft: FftPlanner::new().plan_fft_forward(length),
+            radius_m,
+            kernels: Vec::new(),
+            bins,
+        };
+        encircled.kernels = encircled
+            .radius_m
+            .iter()
+            .flat_map(|&radius| (0..bins).map(move |bin| (radius, bin)))
+            .map(|(radius, bin)| encircled.kernel(radius, bin))
+            .collect();
+        encircled
+    }
+
+    /// R·J₁(2πRf)/f at a bin; πR² at f = 0.
+    fn kernel(&self, radius_m: f64, bin: usize) -> f64 {
+        let frequency = bin as f64 / (BINS_PER_STEP * self.length as f64 * self.pixel_m);
+        let x = 2.0 * PI * radius_m * frequency;
+        PI * radius_m * radius_m * crate::farfield::pattern::jinc(x)
+    }
+
+    /// Memory for [`Encircled::transform`].
+    pub fn spectrum(&self) -> Spectrum {
+        Spectrum {
+            rows: vec![Complex64::default(); self.pixels * self.length],
+            column: vec![Complex64::default(); self.length],
+            scratch: vec![Complex64::default(); self.fft.get_inplace_scratch_len()],
+            line: vec![0.0; self.bins],
+        }
+    }
+
+    /// Take a map into `spectrum`.
+    pub fn transform(&self, map: &Map, spectrum: &mut Spectrum) {
+        let (pixels, length) = (self.pixels, self.length);
+        let centre = pixels / 2;
+        let place = |pixel: usize| (pixel + length - centre) % length;
+        spectrum.rows.fill(Complex64::default());
+        for (row, line) in spectrum
+            .rows
+            .chunks_exact_mut(length)
+            .zip(map.irradiance_w_m2.chunks_exact(pixels))
+        {
+            for (pixel, &value) in line.iter().enumerate() {
+                row[place(pixel)].re = value;
+            }
+            self.fft.process_with_scratch(row, &mut spectrum.scratch);
+        }
+        spectrum.line.fill(0.0);
+        // A real map's spectrum is conjugate in −f: half the columns tell all.
+        for column in 0..=length / 2 {
+            spectrum.column.fill(Complex64::default());
+            for (row, line) in spectrum.rows.chunks_exact(length).enumerate() {
+                spectrum.column[place(row)] = line[column];
+            }
+            self.fft
+                .process_with_scratch(&mut spectrum.column, &mut spectrum.scratch);
+            let twice = if column == 0 || 2 * column == length {
+                1.0
+            } else {
+                2.0
+            };
+            for (row, value) in spectrum.column.iter().enumerate() {
+                let row = row.min(length - row);
+                let steps = (column as f64).hypot(row as f64);
+                let share = twice * self.fade(steps);
+                if share > 0.0 {
+                    gather(&mut spectrum.line, steps * BINS_PER_STEP, share * value.re);
+                }
+            }
+        }
+        let scale = 1.0 / (length * length) as f64;
+        for value in &mut spectrum.line {
+            *value *= scale;
+        }
+    }
+
+    /// 1 within the band, falling to 0 at Nyquist's frequency (a raised cosine).
+    fn fade(&self, steps: f64) -> f64 {
+        if steps <= self.band_steps {
+            1.0
+        } else if steps >= self.nyquist_steps {
+            0.0
+        } else {
+            let way = (steps - self.band_steps) / (self.nyquist_steps - self.band_steps);
+            0.5 * (1.0 + (PI * way).cos())
+        }
+    }
+
+    /// Power within a radius, in watts.
+    pub fn power_w(&self, spectrum: &Spectrum, radius_m: f64) -> f64 {
+        spectrum
+            .line
+            .iter()
+            .enumerate()
+            .map(|(bin, value)| value * self.kernel(radius_m, bin))
+            .sum()
+    }
+
+    /// Power within each of the curve's radii, in watts.
+    pub fn curve_w(&self, spectrum: &Spectrum) -> Vec<f64> {
+        self.kernels
+            .chunks_exact(self.bins)
+            .map(|kernel| kernel.iter().zip(&spectrum.line).map(|(k, s)| k * s).sum())
+            .collect()
+    }
+
+    /// Diameter of the circle that holds `power_w`; `None` when it is larger than the window.
+    pub fn diameter_m(&self, spectrum: &Spectrum, curve_w: &[f64], power_w: f64) -> Option<f64> {
+        let upper = curve_w.iter().position(|&within| within >= power_w)?;
+        if upper == 0 {
+            return Some(0.0);
+        }
+        // False position, with the stale end's value halved (Illinois rule): superlinear and bracketed.
+        let (mut low, mut high) = (self.radius_m[upper - 1], self.radius_m[upper]);
+        let (mut below, mut above) = (curve_w[upper - 1] - power_w, curve_w[upper] - power_w);
+        let tolerance = 1e-7 * self.radius_m[RADII - 1];
+        for _ in 0..60 {
+            if high - low <= tolerance || above <= 0.0 {
+                break;
+            }
+            let middle = (low * above - high * below) / (above - below);
+            let value = self.power_w(spectrum, middle) - power_w;
+            if value.abs() <= 1e-9 * power_w {
+                return Some(2.0 * middle);
+            }
+            if value < 0.0 {
+                (low, below) = (middle, value);
+                above *= 0.5;
+            } else {
+                (high, above) = (middle, value);
+                below *= 0.5;
+            }
+        }
+        Some(low + high)
+    }
+}
+
+/// Add `value` at fractional bin `place` with the four weights of cubic Lagrange interpolation.
+fn gather(line: &mut [f64], place: f64, value: f64) {
+    let base = place.floor();
+    let t = place - base;
+    let base = base as usize;
+    let weights = [
+        -t * (t - 1.0) * (t - 2.0) / 6.0,
+        (t + 1.0) * (t - 1.0) * (t - 2.0) / 2.0,
+        -(t + 1.0) * t * (t - 2.0) / 2.0,
+        (t + 1.0) * t * (t - 1.0) / 6.0,
+    ];
+    for (offset, weight) in weights.into_iter().enumerate() {
+        // The kernel is even in f: a bin left of 0 is its mirror image.
+        let bin = if base + offset == 0 {
+            1
+        } else {
+            base + offset - 1
+        };
+        if let Some(sum) = line.get_mut(bin) {
+            *sum += weight * value;
+        }
+    }
+}

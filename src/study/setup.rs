@@ -1,0 +1,167 @@
+//! What every study starts from: the array laid out, its map and method chosen, and
+//! the array without errors computed.
+
+use crate::array::Array;
+use crate::error::ScenarioError;
+use crate::farfield::choose::{Choice, MEMORY_LIMIT_BYTES, Refusal, Tilts, choose, prepare};
+use crate::farfield::{Grid, Map};
+use crate::figures::{Reader, Reading};
+use crate::perturb::Draw;
+use crate::scenario::{Figure, Scenario, Window};
+
+/// Most pixels a side that an automatic window takes for the 80 % circle.
+const MOST_AUTO_PIXELS: usize = 2047;
+
+/// Room around the 80 % circle without errors, so that errors may widen it.
+const ROOM_AROUND_CIRCLE: f64 = 1.25;
+
+/// A scenario ready to run.
+#[derive(Debug)]
+pub struct Setup {
+    /// The scenario.
+    pub scenario: Scenario,
+    /// Its array.
+    pub array: Array,
+    /// Grid of the map.
+    pub grid: Grid,
+    /// How the far field is computed.
+    pub choice: Choice,
+    /// Tilts that the errors bring.
+    pub tilts: Tilts,
+    /// Reads figures, with the array without errors as the reference.
+    pub reader: Reader,
+    /// Map of the array without errors.
+    pub ideal_map: Map,
+    /// Its figures.
+    pub ideal: Reading,
+}
+
+impl Setup {
+    /// Lay out the array and compute it without errors.
+    ///
+    /// # Errors
+    /// What [`Array::new`] refuses, a map or an array beyond the memory limit, and
+    /// bounds on figures that the array without errors does not have.
+    pub fn new(scenario: Scenario) -> Result<Setup, ScenarioError> {
+        let array = Array::new(&scenario)?;
+        let tilts = Tilts {
+            jitter_rad: scenario.errors.jitter_rad.rms(),
+            common_jitter_rad: scenario.errors.common_jitter_rad.rms(),
+        };
+        let pixel_m = array.spot_m() / scenario.run.samples_per_spot;
+        let (choice, reader, ideal_map, ideal) = match scenario.run.window {
+            Window::Width { width_m } => {
+                without_errors(&scenario, &array, tilts, Grid::covering(width_m, pixel_m))?
+            }
+            Window::Auto => automatic_window(&scenario, &array, tilts, pixel_m)?,
+        };
+        let setup = Setup {
+            grid: ideal_map.grid,
+            scenario,
+            array,
+            choice,
+            tilts,
+            reader,
+            ideal_map,
+            ideal,
+        };
+        setup.refuse_undefined_bounds()?;
+        Ok(setup)
+    }
+
+    /// Workers that fit in memory, of `threads`.
+    pub fn workers(&self, threads: usize) -> usize {
+        let room = (MEMORY_LIMIT_BYTES - self.choice.shared_bytes) / self.trial_bytes();
+        threads.min(room as usize).max(1)
+    }
+
+    /// Bytes that a worker needs for a trial, map and figures included.
+    pub fn trial_bytes(&self) -> f64 {
+        let pixels = (self.grid.pixels as f64).powi(2);
+        self.choice.worker_bytes + pixels * (4.0 * 8.0 + 16.0)
+    }
+
+    fn refuse_undefined_bounds(&self) -> Result<(), ScenarioError> {
+        for bound in &self.scenario.require.bounds {
+            if self.ideal.figures.get(bound.figure).is_none() {
+                let remedy = match bound.figure {
+                    Figure::BucketPower | Figure::BucketFraction | Figure::BeamQuality => {
+                        "state a target.bucket_diameter inside the window"
+                    }
+                    Figure::Strehl | Figure::StrehlPeak | Figure::CombiningEfficiency => {
+                        "the array without errors puts next to no light on the aim point: change focus or offsets"
+                    }
+                    Figure::SideLobeRatio => "a larger run.window that holds a side lobe",
+                    _ => "a larger run.window",
+                };
+                return Err(self.scenario.error(
+                    &format!("require.{}", bound.figure.name()),
+                    "this figure is undefined for the array without errors",
+                    format!("to define it: {remedy}"),
+                ));
+            }
+        }
+        Ok(())
+    }
+}
+
+type WithoutErrors = (Choice, Reader, Map, Reading);
+
+/// The map of the array without errors on a grid, and its reading.
+fn without_errors(
+    scenario: &Scenario,
+    array: &Array,
+    tilts: Tilts,
+    grid: Grid,
+) -> Result<WithoutErrors, ScenarioError> {
+    let refused = |refusal: Refusal| {
+        let key = if grid.pixels > MOST_AUTO_PIXELS {
+            "run.window"
+        } else {
+            "run.method"
+        };
+        scenario.error(key, refusal.found, refusal.advice)
+    };
+    let choice = choose(array, grid, tilts, scenario.run.method).map_err(refused)?;
+    let still = Tilts::default();
+    let quiet = choose(array, grid, still, scenario.run.method).map_err(refused)?;
+    let mut map = Map::dark(grid);
+    prepare(&quiet, array, grid, still, 0.0)
+        .worker()
+        .irradiance(&Draw::none(array.len()), &mut map);
+    let mut reader = Reader::new(array, grid, scenario.target.bucket_diameter_m);
+    let reading = reader.set_reference(array, &map);
+    Ok((choice, reader, map, reading))
+}
+
+/// A window of 16 spots, twice the bucket, the reach of common jitter, and the 80 %
+/// circle of the array without errors as far as 2047² pixels allow.
+fn automatic_window(
+    scenario: &Scenario,
+    array: &Array,
+    tilts: Tilts,
+    pixel_m: f64,
+) -> Result<WithoutErrors, ScenarioError> {
+    let spot_m = array.spot_m();
+    let bucket_m = scenario.target.bucket_diameter_m.unwrap_or(0.0);
+    let reach_m = 4.0 * array.range_m * tilts.common_jitter_rad + 4.0 * spot_m;
+    let least_m = (16.0 * spot_m).max(2.0 * bucket_m).max(2.0 * reach_m);
+    let most_m = MOST_AUTO_PIXELS as f64 * pixel_m;
+    let mut width_m = least_m;
+    loop {
+        let found = without_errors(scenario, array, tilts, Grid::covering(width_m, pixel_m))?;
+        let circle_m = found.3.figures.get(Figure::Encircled80Diameter);
+        match circle_m {
+            Some(circle_m) => {
+                let needed_m = (ROOM_AROUND_CIRCLE * circle_m).min(most_m).max(least_m);
+                let grid = Grid::covering(needed_m, pixel_m);
+                if grid.pixels == found.2.grid.pixels {
+                    return Ok(found);
+                }
+                return without_errors(scenario, array, tilts, grid);
+            }
+            None if width_m >= most_m * (1.0 - 1e-9) => return Ok(found),
+            None => width_m = (2.0 * width_m).min(most_m),
+        }
+    }
+}
