@@ -32,6 +32,7 @@ pub mod farfield;
 pub mod figures;
 pub mod perturb;
 pub mod quantity;
+pub mod report;
 pub mod scenario;
 pub mod study;
 pub mod trials;

@@ -1,0 +1,3 @@
+//! Outcomes → console text, tables, pictures and pages, as bytes.
+
+pub mod units;
