@@ -34,6 +34,19 @@ pub struct Refusal {
     pub advice: String,
 }
 
+impl Choice {
+    /// Why this method, in a few words.
+    pub fn reason(&self) -> String {
+        match self.method {
+            Method::Direct => "the sum over elements is the cheapest here".to_string(),
+            Method::Sampled => format!(
+                "the aperture painted on {0} × {0} points, one pruned transform a trial",
+                self.sampled.length
+            ),
+        }
+    }
+}
+
 /// The tilts that an array's elements will have.
 #[derive(Debug, Clone, Copy, Default, PartialEq)]
 pub struct Tilts {
@@ -119,6 +132,22 @@ pub fn prepare<'a>(
             mean_over_tilt_rad,
         )),
     }
+}
+
+/// Seconds of one round of [`reference_work`] on the machine that the costs below were taken on.
+pub const REFERENCE_WORK_S: f64 = 25e-6;
+
+/// Arithmetic of the kind that a trial is made of, to compare machines by.
+pub fn reference_work(rounds: usize) {
+    let fft = rustfft::FftPlanner::new().plan_fft_forward(2048);
+    let mut line = vec![num_complex::Complex64::new(1.0, 0.5); 2048];
+    let mut scratch = vec![num_complex::Complex64::default(); fft.get_inplace_scratch_len()];
+    for _ in 0..rounds {
+        fft.process_with_scratch(&mut line, &mut scratch);
+        // Keeps the values finite over any number of rounds.
+        line.iter_mut().for_each(|value| *value /= 2048f64.sqrt());
+    }
+    std::hint::black_box(line);
 }
 
 /// One complex multiply-add in a vectorised loop.

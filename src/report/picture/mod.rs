@@ -115,7 +115,11 @@ mod tests {
                 obscuration: 0.3,
                 beam_radius_m: None,
             },
+            lattice: None,
             envelope_diameter_m,
+            wavelength_m: 1e-6,
+            range_m: 1.0,
+            curvature_per_m: 0.0,
         };
         let states = [State::Lit, State::Dark, State::Unlocked];
         let draw = Draw {

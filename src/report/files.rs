@@ -1,0 +1,152 @@
+//! The files of a result folder, but for `summary.json`, which knows the time they took.
+
+use super::picture::{AperturePicture, EncircledPicture, HistogramPicture, MapPicture};
+use super::tables;
+use super::units::significant;
+use crate::farfield::Map;
+use crate::figures::Figures;
+use crate::scenario::Figure;
+use crate::study::assess::Outcome;
+use rayon::prelude::*;
+
+/// A file to be written: its name and its bytes.
+pub type File = (String, Vec<u8>);
+
+/// Draws one picture of an outcome.
+type Painter = fn(&Outcome) -> Vec<u8>;
+
+/// The scenario as run, the tables and the maps of an `assess`.
+///
+/// # Errors
+/// None in practice: everything is rendered in memory.
+pub fn tables(outcome: &Outcome) -> Result<Vec<File>, ndarray_npy::WriteNpzError> {
+    Ok([
+        (
+            "scenario.toml",
+            outcome.setup.scenario.to_toml().into_bytes(),
+        ),
+        ("trials.csv", tables::trials(outcome)),
+        ("encircled.csv", tables::encircled(outcome)),
+        ("lobes.csv", tables::lobes(outcome)),
+        ("maps.npz", tables::maps(outcome)?),
+    ]
+    .map(|(name, bytes)| (name.to_string(), bytes))
+    .into())
+}
+
+/// The pictures of an `assess`, drawn in parallel.
+pub fn pictures(outcome: &Outcome) -> Vec<File> {
+    let draw: [(&str, Painter); 6] = [
+        ("map_ideal.png", |outcome| {
+            let setup = &outcome.setup;
+            map(
+                outcome,
+                "without errors",
+                &setup.ideal_map,
+                &setup.ideal.figures,
+            )
+        }),
+        ("map_one_trial.png", |outcome| {
+            let shown = &outcome.shown;
+            map(outcome, &shown_caption(outcome), &shown.map, &shown.figures)
+        }),
+        ("map_long_exposure.png", |outcome| {
+            let caption = format!(
+                "long exposure: mean of {} trials",
+                outcome.trials.trials.len()
+            );
+            let figures = &outcome.long_exposure.figures;
+            map(outcome, &caption, &outcome.trials.mean_map, figures)
+        }),
+        ("aperture.png", aperture),
+        ("encircled.png", encircled),
+        ("strehl.png", histogram),
+    ];
+    draw.par_iter()
+        .map(|(name, draw)| (name.to_string(), draw(outcome)))
+        .collect()
+}
+
+fn shown_caption(outcome: &Outcome) -> String {
+    let strehl = match outcome.shown.figures.get(Figure::Strehl) {
+        Some(strehl) => format!(
+            ", Strehl ratio {} (nearest the median)",
+            significant(strehl, 3)
+        ),
+        None => String::new(),
+    };
+    format!("one trial, no. {}{strehl}", outcome.shown.trial)
+}
+
+fn map(outcome: &Outcome, what: &str, map: &Map, figures: &Figures) -> Vec<u8> {
+    MapPicture {
+        title: &outcome.setup.scenario.title,
+        what,
+        map,
+        peak_irradiance_w_m2: figures.get(Figure::PeakIrradiance),
+        range_m: outcome.setup.array.range_m,
+        bucket_diameter_m: outcome.setup.scenario.target.bucket_diameter_m,
+        encircled_80_diameter_m: figures.get(Figure::Encircled80Diameter),
+        spot_m: outcome.setup.array.spot_m(),
+    }
+    .png()
+}
+
+fn aperture(outcome: &Outcome) -> Vec<u8> {
+    let array = &outcome.setup.array;
+    // The piston that a tilt of the whole array brings would drown the elements' own.
+    let mut draw = outcome.shown.draw.clone();
+    let (tilt_x, tilt_y) = draw.common_tilt_rad;
+    for (n, phase) in draw.phase_rad.iter_mut().enumerate() {
+        *phase -= array.wavenumber() * (tilt_x * array.x_m[n] + tilt_y * array.y_m[n]);
+    }
+    AperturePicture {
+        title: &outcome.setup.scenario.title,
+        what: &shown_caption(outcome),
+        array,
+        draw: &draw,
+        wavelength_m: array.wavelength_m,
+    }
+    .png()
+}
+
+fn encircled(outcome: &Outcome) -> Vec<u8> {
+    let band = &outcome.encircled;
+    let half = |diameter: Option<f64>| diameter.map(|diameter| diameter / 2.0);
+    EncircledPicture {
+        title: &outcome.setup.scenario.title,
+        what: &format!(
+            "power within a circle, {} trials",
+            outcome.trials.trials.len()
+        ),
+        radius_m: &band.radius_m,
+        ideal: &band.ideal,
+        long_exposure: &band.long_exposure,
+        p05: &band.p05,
+        p95: &band.p95,
+        bucket_radius_m: half(outcome.setup.scenario.target.bucket_diameter_m),
+        encircled_80_radius_m: half(
+            outcome
+                .long_exposure
+                .figures
+                .get(Figure::Encircled80Diameter),
+        ),
+    }
+    .png()
+}
+
+fn histogram(outcome: &Outcome) -> Vec<u8> {
+    let trials = &outcome.trials.trials;
+    let values: Vec<f64> = trials
+        .iter()
+        .map(|trial| trial.figures.get(Figure::Strehl).unwrap_or(f64::NAN))
+        .collect();
+    HistogramPicture {
+        title: &outcome.setup.scenario.title,
+        values: &values,
+        mean: outcome.statistics[Figure::Strehl as usize].1.mean,
+        bounds: &outcome.setup.scenario.require.bounds,
+        predicted_mean: outcome.predicted.figures.get(Figure::Strehl),
+    }
+    .png()
+}
