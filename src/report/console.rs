@@ -130,7 +130,11 @@ pub fn of_assess(outcome: &Outcome) -> String {
     lines.extend(bound_lines(outcome));
     lines.extend(limits(outcome));
     lines.push(String::new());
-    lines.extend(figure_table(outcome).lines().map(|line| line.trim_end().to_string()));
+    lines.extend(
+        figure_table(outcome)
+            .lines()
+            .map(|line| line.trim_end().to_string()),
+    );
     lines.push(String::new());
     lines.extend(setting(outcome));
     lines.extend(outcome.notes.iter().map(|note| format!("Note: {note}")));
@@ -218,9 +222,7 @@ fn limits(outcome: &Outcome) -> Vec<String> {
 /// The figures, a row each, in the unit that suits the row.
 fn figure_table(outcome: &Outcome) -> Table {
     let mut table = Table::new();
-    table.load_style(
-        TableStyle::new().header_separator(LineStyle::none().fill('─').junction('─')),
-    );
+    table.load_style(TableStyle::new().header_separator(LineStyle::none().fill('─').junction('─')));
     table.set_header([
         "",
         "no errors",
