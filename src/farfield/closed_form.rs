@@ -15,8 +15,8 @@ use super::choose::{Choice, Refusal, Tilts, choose, prepare};
 use super::map::{Grid, Map};
 use super::pattern::{ElementPattern, Wavefront};
 use super::smooth::Samples;
-use crate::array::Array;
-use crate::perturb::Draw;
+use crate::array::{Array, Elements};
+use crate::perturb::TrialErrors;
 use crate::scenario::{Dropped, Errors, MethodChoice};
 use num_complex::Complex64;
 use rayon::prelude::*;
@@ -109,7 +109,7 @@ fn independent_mean(array: &Array, errors: &Errors, grid: Grid) -> Result<Map, R
     let mut map = Map::dark(grid);
     far_field
         .worker()
-        .irradiance(&Draw::none(array.len()), &mut map);
+        .irradiance(TrialErrors::none(&Errors::none()), &mut map);
     let coherent = moments.mean * moments.mean;
     let scattered = scattered(array, moments, jitter_rad, grid);
     for (value, scattered) in map.irradiance_w_m2.iter_mut().zip(scattered) {
@@ -168,14 +168,15 @@ fn shifts(array: &Array, samples: &Samples) -> Vec<Complex64> {
         return vec![array.power_w().into(); count * count];
     }
     let frequencies = samples.frequencies();
+    let elements: Elements = array.list();
     // Elements in fixed blocks: phasors along x of a block, then every row takes them up.
     let mut sums = vec![Complex64::default(); count * count];
-    for first in (0..array.len()).step_by(256) {
-        let block = first..(first + 256).min(array.len());
+    for first in (0..elements.len()).step_by(256) {
+        let block = first..(first + 256).min(elements.len());
         let along_x: Vec<Complex64> = block
             .clone()
             .flat_map(|n| {
-                let tilt = array.tilt_x_rad[n];
+                let tilt = elements.tilt_x_rad[n];
                 frequencies
                     .iter()
                     .map(move |f| Complex64::cis(-TAU * f * tilt))
@@ -185,8 +186,8 @@ fn shifts(array: &Array, samples: &Samples) -> Vec<Complex64> {
             .zip(&frequencies)
             .for_each(|(row, f)| {
                 for (phasors, n) in along_x.chunks_exact(count).zip(block.clone()) {
-                    let power = array.amplitude[n] * array.amplitude[n];
-                    let along_y = power * Complex64::cis(-TAU * f * array.tilt_y_rad[n]);
+                    let power = elements.amplitude[n] * elements.amplitude[n];
+                    let along_y = power * Complex64::cis(-TAU * f * elements.tilt_y_rad[n]);
                     for (value, phasor) in row.iter_mut().zip(phasors) {
                         *value += along_y * phasor;
                     }
@@ -204,10 +205,9 @@ fn shifts(array: &Array, samples: &Samples) -> Vec<Complex64> {
 /// moments follow from those of z; for piston alone and equal elements it is
 /// (N − 1)(1 − μ)²[(1 − μ)² + 2Nμ]/N³, μ = exp(−σ²).
 pub fn strehl_std(array: &Array, errors: &Errors) -> Option<f64> {
-    let still = |values: &[f64]| values.iter().all(|value| value.abs() < 1e-12);
     if errors.jitter_rad.rms() > 0.0
         || errors.common_jitter_rad.rms() > 0.0
-        || !still(&array.phase_rad)
+        || array.has_static_phase()
         || array.largest_tilt_rad() > 0.0
     {
         return None;
@@ -219,8 +219,7 @@ pub fn strehl_std(array: &Array, errors: &Errors) -> Option<f64> {
         cubic,
         quartic,
     } = Moments::of(errors);
-    let power_sum = |power: i32| array.amplitude.iter().map(|w| w.powi(power)).sum::<f64>();
-    let [p1, p2, p3, p4] = [1, 2, 3, 4].map(power_sum);
+    let [p1, p2, p3, p4] = [1, 2, 3, 4].map(|power| array.amplitude_sum(power));
     // Central moments of x = z − E z.
     let variance = mean_square - mean * mean;
     let pseudo = square - mean * mean;

@@ -2,9 +2,9 @@
 
 use super::map::{Grid, Map};
 use super::pattern::{ElementPattern, Wavefront};
-use super::{FarField, Method, Worker, largest_angle_rad};
-use crate::array::Array;
-use crate::perturb::Draw;
+use super::{FarField, Method, Radiated, Worker, largest_angle_rad};
+use crate::array::{Array, Elements};
+use crate::perturb::{Draw, TrialErrors};
 use num_complex::Complex64;
 use rayon::prelude::*;
 
@@ -15,6 +15,7 @@ const BLOCK: usize = 512;
 #[derive(Debug)]
 pub struct Direct<'a> {
     array: &'a Array,
+    elements: Elements,
     grid: Grid,
     pattern: ElementPattern,
 }
@@ -34,72 +35,79 @@ impl<'a> Direct<'a> {
         let reach = largest_angle_rad(array, grid, random_tilt_rad);
         Direct {
             array,
+            elements: array.list(),
             grid,
             pattern: ElementPattern::new(&array.element, array.wavenumber(), wavefront, reach),
         }
     }
 
-    /// Irradiance in one direction, in W/m².
-    pub fn irradiance_at(&self, draw: &Draw, theta_x_rad: f64, theta_y_rad: f64) -> f64 {
-        let (array, k) = (self.array, self.array.wavenumber());
-        let field: Complex64 = (0..array.len())
+    /// Irradiance of the array without errors in one direction, in W/m².
+    pub fn irradiance_without_errors_at(&self, theta_x_rad: f64, theta_y_rad: f64) -> f64 {
+        let (elements, k) = (&self.elements, self.array.wavenumber());
+        let field: Complex64 = (0..elements.len())
             .map(|n| {
-                let phase = array.phase_rad[n] + draw.phase_rad[n]
-                    - k * (theta_x_rad * array.x_m[n] + theta_y_rad * array.y_m[n]);
-                let tilt_x = array.tilt_x_rad[n] + draw.tilt_x_rad[n];
-                let tilt_y = array.tilt_y_rad[n] + draw.tilt_y_rad[n];
-                Complex64::from_polar(array.amplitude[n] * draw.amplitude[n], phase)
-                    * self.pattern.at(theta_x_rad - tilt_x, theta_y_rad - tilt_y)
+                let phase = elements.phase_rad[n]
+                    - k * (theta_x_rad * elements.x_m[n] + theta_y_rad * elements.y_m[n]);
+                let pattern = self.pattern.at(
+                    theta_x_rad - elements.tilt_x_rad[n],
+                    theta_y_rad - elements.tilt_y_rad[n],
+                );
+                Complex64::from_polar(elements.amplitude[n], phase) * pattern
             })
             .sum();
-        field.norm_sqr() / (array.wavelength_m * array.range_m).powi(2)
+        field.norm_sqr() / (self.array.wavelength_m * self.array.range_m).powi(2)
     }
 
+    /// Fields at the map's pixels, in √W·m.
     fn fields(&self, draw: &Draw) -> Vec<Complex64> {
-        let (array, k, pixels) = (self.array, self.array.wavenumber(), self.grid.pixels);
-        let theta: Vec<f64> = self
-            .grid
-            .axis_m()
-            .iter()
-            .map(|u| u / array.range_m)
-            .collect();
+        let (elements, k, pixels) = (&self.elements, self.array.wavenumber(), self.grid.pixels);
+        // A tilt of the whole array shifts the whole pattern.
+        let shifted = |common: f64| -> Vec<f64> {
+            let axis = self.grid.axis_m();
+            axis.iter()
+                .map(|u| u / self.array.range_m - common)
+                .collect()
+        };
+        let theta_x = shifted(draw.common_tilt_rad.0);
+        let theta_y = shifted(draw.common_tilt_rad.1);
         let tilt = |n: usize| {
             (
-                array.tilt_x_rad[n] + draw.tilt_x_rad[n],
-                array.tilt_y_rad[n] + draw.tilt_y_rad[n],
+                elements.tilt_x_rad[n] + draw.tilt_x_rad[n],
+                elements.tilt_y_rad[n] + draw.tilt_y_rad[n],
             )
         };
         // One tilt for all: the pattern leaves the sum.
         let first = tilt(0);
-        let shared = (0..array.len()).all(|n| tilt(n) == first);
+        let shared = (0..elements.len()).all(|n| tilt(n) == first);
         let mut fields = vec![Complex64::default(); pixels * pixels];
         let mut phasors = vec![Complex64::default(); BLOCK * pixels];
-        for block in (0..array.len()).step_by(BLOCK) {
-            let elements = block..(block + BLOCK).min(array.len());
+        for block in (0..elements.len()).step_by(BLOCK) {
+            let numbers = block..(block + BLOCK).min(elements.len());
             phasors
                 .par_chunks_mut(pixels)
-                .zip(elements.clone())
+                .zip(numbers.clone())
                 .for_each(|(row, n)| {
-                    let amplitude = array.amplitude[n] * draw.amplitude[n];
-                    let phase = array.phase_rad[n] + draw.phase_rad[n];
-                    for (value, theta_x) in row.iter_mut().zip(&theta) {
-                        *value =
-                            Complex64::from_polar(amplitude, phase - k * theta_x * array.x_m[n]);
+                    let amplitude = elements.amplitude[n] * draw.amplitude[n];
+                    let phase = elements.phase_rad[n] + draw.phase_rad[n];
+                    for (value, theta_x) in row.iter_mut().zip(&theta_x) {
+                        let phase = phase - k * theta_x * elements.x_m[n];
+                        *value = Complex64::from_polar(amplitude, phase);
                     }
                 });
             fields
                 .par_chunks_mut(pixels)
-                .zip(&theta)
+                .zip(&theta_y)
                 .for_each(|(line, &theta_y)| {
-                    for (row, n) in phasors.chunks_exact(pixels).zip(elements.clone()) {
-                        let along_y = Complex64::cis(-k * theta_y * array.y_m[n]);
+                    for (row, n) in phasors.chunks_exact(pixels).zip(numbers.clone()) {
+                        let along_y = Complex64::cis(-k * theta_y * elements.y_m[n]);
                         if shared {
                             for (field, phasor) in line.iter_mut().zip(row) {
                                 *field += along_y * phasor;
                             }
                         } else {
                             let (tilt_x, tilt_y) = tilt(n);
-                            for ((field, phasor), theta_x) in line.iter_mut().zip(row).zip(&theta) {
+                            for ((field, phasor), theta_x) in line.iter_mut().zip(row).zip(&theta_x)
+                            {
                                 *field += along_y
                                     * phasor
                                     * self.pattern.at(theta_x - tilt_x, theta_y - tilt_y);
@@ -111,9 +119,9 @@ impl<'a> Direct<'a> {
         if shared {
             fields
                 .par_chunks_mut(pixels)
-                .zip(&theta)
+                .zip(&theta_y)
                 .for_each(|(line, theta_y)| {
-                    for (field, theta_x) in line.iter_mut().zip(&theta) {
+                    for (field, theta_x) in line.iter_mut().zip(&theta_x) {
                         *field *= self.pattern.at(theta_x - first.0, theta_y - first.1);
                     }
                 });
@@ -132,17 +140,27 @@ impl FarField for Direct<'_> {
     }
 
     fn worker(&self) -> Box<dyn Worker + '_> {
-        Box::new(DirectWorker(self))
+        Box::new(DirectWorker {
+            direct: self,
+            draw: Draw::default(),
+        })
     }
 }
 
-struct DirectWorker<'a>(&'a Direct<'a>);
+struct DirectWorker<'a> {
+    direct: &'a Direct<'a>,
+    draw: Draw,
+}
 
 impl Worker for DirectWorker<'_> {
-    fn irradiance(&mut self, draw: &Draw, map: &mut Map) {
-        let scale = (self.0.array.wavelength_m * self.0.array.range_m).powi(-2);
-        for (value, field) in map.irradiance_w_m2.iter_mut().zip(self.0.fields(draw)) {
+    fn irradiance(&mut self, trial: TrialErrors<'_>, map: &mut Map) -> Radiated {
+        let direct = self.direct;
+        self.draw.redraw(direct.array, trial);
+        let scale = (direct.array.wavelength_m * direct.array.range_m).powi(-2);
+        let fields = direct.fields(&self.draw);
+        for (value, field) in map.irradiance_w_m2.iter_mut().zip(fields) {
             *value = field.norm_sqr() * scale;
         }
+        Radiated::of(&direct.elements, &self.draw)
     }
 }

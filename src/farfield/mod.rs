@@ -14,8 +14,8 @@ mod quadrature;
 mod sampled;
 mod smooth;
 
-use crate::array::Array;
-use crate::perturb::Draw;
+use crate::array::{Array, Elements};
+use crate::perturb::{Draw, State, TrialErrors};
 
 pub use direct::Direct;
 pub use fft::good_length;
@@ -53,8 +53,33 @@ pub trait FarField: Send + Sync {
 
 /// Computes one draw after another.
 pub trait Worker: Send {
-    /// Fill `map` with the irradiance of a draw. `map` has the grid of the method.
-    fn irradiance(&mut self, draw: &Draw, map: &mut Map);
+    /// Fill `map` with the irradiance of a trial. `map` has the grid of the method.
+    fn irradiance(&mut self, trial: TrialErrors<'_>, map: &mut Map) -> Radiated;
+}
+
+/// What the elements of a trial radiate.
+#[derive(Debug, Clone, Copy, Default, PartialEq)]
+pub struct Radiated {
+    /// Power of all elements together.
+    pub power_w: f64,
+    /// Elements that radiate nothing.
+    pub dark: usize,
+    /// Elements at a random phase.
+    pub unlocked: usize,
+}
+
+impl Radiated {
+    fn of(elements: &Elements, draw: &Draw) -> Radiated {
+        let count = |state| draw.state.iter().filter(|&&each| each == state).count();
+        let amplitudes = elements.amplitude.iter().zip(&draw.amplitude);
+        Radiated {
+            power_w: amplitudes
+                .map(|(amplitude, factor)| (amplitude * factor).powi(2))
+                .sum(),
+            dark: count(State::Dark),
+            unlocked: count(State::Unlocked),
+        }
+    }
 }
 
 /// The largest angle between a map point and an element's tilt, six deviations of random tilt included.

@@ -1,7 +1,7 @@
 //! Painting elements on the grid of the `sampled` method.
 
 use super::pattern::{Wavefront, profile_power_m2};
-use crate::array::Array;
+use crate::array::{Array, Elements};
 use crate::scenario::Element;
 use num_complex::{Complex32, Complex64};
 use rayon::prelude::*;
@@ -62,11 +62,11 @@ impl Cells {
 }
 
 /// Paint every element of an array on a grid of `pitch_m`.
-pub fn paint(array: &Array, pitch_m: f64, wavefront: Wavefront) -> Cells {
+pub fn paint(array: &Array, elements: &Elements, pitch_m: f64, wavefront: Wavefront) -> Cells {
     let brush = Brush::new(array, pitch_m, wavefront);
-    let boxes: Vec<PaintedBox> = (0..array.len())
+    let boxes: Vec<PaintedBox> = (0..elements.len())
         .into_par_iter()
-        .map(|n| brush.paint(array.x_m[n], array.y_m[n]))
+        .map(|n| brush.paint(elements.x_m[n], elements.y_m[n]))
         .collect();
     let mut order: Vec<usize> = (0..boxes.len()).collect();
     order.sort_by_key(|&n| boxes[n].first_row);

@@ -15,9 +15,9 @@ use super::fft::good_length;
 use super::map::{Grid, Map};
 use super::paint::{Cells, paint};
 use super::pattern::{Wavefront, sinc};
-use super::{FarField, Method, Worker};
-use crate::array::Array;
-use crate::perturb::Draw;
+use super::{FarField, Method, Radiated, Worker};
+use crate::array::{Array, Elements};
+use crate::perturb::{Draw, TrialErrors};
 use num_complex::Complex64;
 use rayon::prelude::*;
 use rustfft::{Fft, FftPlanner};
@@ -71,10 +71,10 @@ impl SampledPlan {
             length,
             pitch_m,
             rows,
-            shared_bytes: array.len() as f64 * (8.0 * box_cells + 24.0),
+            shared_bytes: array.len() as f64 * (8.0 * box_cells + 72.0),
             worker_bytes: 16.0 * (rows as f64 * grid.pixels as f64)
                 + 8.0 * (grid.pixels as f64).powi(2)
-                + 64.0 * array.len() as f64,
+                + 73.0 * array.len() as f64,
         }
     }
 }
@@ -82,6 +82,7 @@ impl SampledPlan {
 /// The painted array, ready for any number of draws.
 pub struct Sampled<'a> {
     array: &'a Array,
+    elements: Elements,
     grid: Grid,
     plan: SampledPlan,
     cells: Cells,
@@ -111,11 +112,13 @@ impl<'a> Sampled<'a> {
             mean_over_tilt_rad,
         };
         let cell_over_wavelength = plan.pitch_m / array.wavelength_m;
+        let elements = array.list();
         Sampled {
             array,
             grid,
             plan,
-            cells: paint(array, plan.pitch_m, wavefront),
+            cells: paint(array, &elements, plan.pitch_m, wavefront),
+            elements,
             fft: FftPlanner::new().plan_fft_forward(plan.length),
             deconvolution: grid
                 .axis_m()
@@ -139,6 +142,7 @@ impl FarField for Sampled<'_> {
         let pixels = self.grid.pixels;
         Box::new(SampledWorker {
             sampled: self,
+            draw: Draw::default(),
             excitation: vec![Excitation::default(); self.array.len()],
             half_way: vec![Complex64::default(); self.cells.rows.len() * pixels],
             transposed: vec![0.0; pixels * pixels],
@@ -156,6 +160,7 @@ struct Excitation {
 
 struct SampledWorker<'a> {
     sampled: &'a Sampled<'a>,
+    draw: Draw,
     excitation: Vec<Excitation>,
     /// After the first pass: [occupied row][map column].
     half_way: Vec<Complex64>,
@@ -178,17 +183,21 @@ impl SampledWorker<'_> {
         }
     }
 
-    fn excite(&mut self, draw: &Draw) {
+    fn excite(&mut self) {
         let (array, pitch) = (self.sampled.array, self.sampled.plan.pitch_m);
+        let (elements, draw) = (&self.sampled.elements, &self.draw);
         let turn = PI * pitch / array.wavelength_m;
+        let (common_x, common_y) = draw.common_tilt_rad;
         for (n, excitation) in self.excitation.iter_mut().enumerate() {
-            let tilt_x_rad = array.tilt_x_rad[n] + draw.tilt_x_rad[n];
-            let tilt_y_rad = array.tilt_y_rad[n] + draw.tilt_y_rad[n];
+            // A tilt of the whole array tilts each element and lifts its centre.
+            let tilt_x_rad = elements.tilt_x_rad[n] + draw.tilt_x_rad[n] + common_x;
+            let tilt_y_rad = elements.tilt_y_rad[n] + draw.tilt_y_rad[n] + common_y;
+            let lift = common_x * elements.x_m[n] + common_y * elements.y_m[n];
             let smear = sinc(turn * tilt_x_rad) * sinc(turn * tilt_y_rad);
             *excitation = Excitation {
                 phasor: Complex64::from_polar(
-                    array.amplitude[n] * draw.amplitude[n] / smear,
-                    array.phase_rad[n] + draw.phase_rad[n],
+                    elements.amplitude[n] * draw.amplitude[n] / smear,
+                    elements.phase_rad[n] + draw.phase_rad[n] + array.wavenumber() * lift,
                 ),
                 tilt_x_rad,
                 tilt_y_rad,
@@ -199,9 +208,9 @@ impl SampledWorker<'_> {
     /// Paint one row of the aperture into `line`, whose negative half wraps around.
     fn paint_row(&self, row: i64, line: &mut [Complex64]) {
         let sampled = self.sampled;
-        let (array, pitch) = (sampled.array, sampled.plan.pitch_m);
+        let (elements, pitch) = (&sampled.elements, sampled.plan.pitch_m);
         let length = sampled.plan.length as i64;
-        let k = array.wavenumber();
+        let k = sampled.array.wavenumber();
         line.fill(Complex64::default());
         for strip in sampled.cells.strips(row) {
             let n = strip.element;
@@ -210,8 +219,8 @@ impl SampledWorker<'_> {
                 continue;
             }
             let (tilt_x, tilt_y) = (excitation.tilt_x_rad, excitation.tilt_y_rad);
-            let x = strip.first_column as f64 * pitch - array.x_m[n];
-            let y = row as f64 * pitch - array.y_m[n];
+            let x = strip.first_column as f64 * pitch - elements.x_m[n];
+            let y = row as f64 * pitch - elements.y_m[n];
             let mut phasor = excitation.phasor * Complex64::cis(k * (tilt_x * x + tilt_y * y));
             let step = Complex64::cis(k * tilt_x * pitch);
             for (offset, cell) in strip.cells.iter().enumerate() {
@@ -225,9 +234,10 @@ impl SampledWorker<'_> {
 }
 
 impl Worker for SampledWorker<'_> {
-    fn irradiance(&mut self, draw: &Draw, map: &mut Map) {
-        self.excite(draw);
+    fn irradiance(&mut self, trial: TrialErrors<'_>, map: &mut Map) -> Radiated {
         let sampled = self.sampled;
+        self.draw.redraw(sampled.array, trial);
+        self.excite();
         let (length, pixels) = (sampled.plan.length, sampled.grid.pixels);
         let centre = sampled.grid.centre();
         // Map index → transform bin, negative frequencies at the end.
@@ -291,5 +301,6 @@ impl Worker for SampledWorker<'_> {
         }
         self.half_way = half_way;
         self.transposed = transposed;
+        Radiated::of(&sampled.elements, &self.draw)
     }
 }

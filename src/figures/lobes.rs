@@ -11,8 +11,8 @@ use crate::array::element::SQRT_3;
 use crate::farfield::choose::{Tilts, choose, prepare};
 use crate::farfield::pattern::{ElementPattern, Wavefront};
 use crate::farfield::{Direct, Grid, Map};
-use crate::perturb::Draw;
-use crate::scenario::{Lattice, MethodChoice};
+use crate::perturb::TrialErrors;
+use crate::scenario::{Errors, Lattice, MethodChoice};
 
 /// One lobe.
 #[derive(Debug, Clone, Copy, PartialEq)]
@@ -50,10 +50,9 @@ pub fn brightest(array: &Array, window_m: f64) -> Vec<Lobe> {
         return Vec::new();
     };
     let mut map = Map::dark(grid);
-    let none = Draw::none(array.len());
     prepare(&choice, array, grid, tilts, 0.0)
         .worker()
-        .irradiance(&none, &mut map);
+        .irradiance(TrialErrors::none(&Errors::none()), &mut map);
     let interpolant = Interpolant::new(SAMPLES_PER_SPOT);
     let mut maxima = local_maxima(&map);
     maxima.sort_by(|a, b| b.2.total_cmp(&a.2));
@@ -71,7 +70,7 @@ pub fn brightest(array: &Array, window_m: f64) -> Vec<Lobe> {
             }
         })
         .collect();
-    lobes.extend(grating_lobes(array, grid, &none));
+    lobes.extend(grating_lobes(array, grid));
     lobes.sort_by(|a, b| b.irradiance_over_peak.total_cmp(&a.irradiance_over_peak));
     lobes.truncate(LISTED);
     let peak = lobes.first().map_or(1.0, |lobe| lobe.irradiance_over_peak);
@@ -83,18 +82,18 @@ pub fn brightest(array: &Array, window_m: f64) -> Vec<Lobe> {
 }
 
 /// Grating lobes of a lattice outside `seen`, with absolute irradiance.
-fn grating_lobes(array: &Array, seen: Grid, none: &Draw) -> Vec<Lobe> {
-    let Some((lattice, pitch_m)) = array.lattice.filter(|_| array.len() > 1) else {
+fn grating_lobes(array: &Array, seen: Grid) -> Vec<Lobe> {
+    let Some(sites) = array.lattice().filter(|_| array.len() > 1) else {
         return Vec::new();
     };
-    let step = array.wavelength_m / pitch_m;
+    let step = array.wavelength_m / sites.pitch_m;
     let limit = (seen.width_m() / 2.0 - seen.pixel_m) / array.range_m;
     let mut directions: Vec<(f64, f64)> = Vec::new();
     for h in -ORDERS..=ORDERS {
         for k in -ORDERS..=ORDERS {
             let (h, k) = (f64::from(h), f64::from(k));
             // Reciprocal vectors of the lattices with a row of neighbours along x.
-            let (x, y) = match lattice {
+            let (x, y) = match sites.lattice {
                 Lattice::Square => (h * step, k * step),
                 Lattice::Hexagonal => (h * step, (2.0 * k - h) / SQRT_3 * step),
             };
@@ -126,7 +125,7 @@ fn grating_lobes(array: &Array, seen: Grid, none: &Draw) -> Vec<Lobe> {
         .map(|(theta_x_rad, theta_y_rad)| Lobe {
             theta_x_rad,
             theta_y_rad,
-            irradiance_over_peak: direct.irradiance_at(none, theta_x_rad, theta_y_rad),
+            irradiance_over_peak: direct.irradiance_without_errors_at(theta_x_rad, theta_y_rad),
         })
         .collect()
 }

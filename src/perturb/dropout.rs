@@ -1,31 +1,50 @@
 //! Dropout: elements that are out, dark or radiating at a random phase.
 
-use super::stream::{Purpose, Stream};
-use super::{Draw, State};
+use super::State;
+use super::block::Block;
+use super::stream::{Stream, Words};
+use super::vector::turns;
+use crate::array::bands::GROUP;
 use crate::scenario::Dropped;
-use std::f64::consts::TAU;
 
-pub(super) fn draw(draw: &mut Draw, probability: f64, dropped: Dropped, seed: u64, trial: u64) {
-    if probability <= 0.0 {
+/// An element is out when its word falls below the probability's share of all words.
+#[inline(always)]
+pub fn draw(
+    block: &mut Block,
+    below: u32,
+    dropped: Dropped,
+    luck: Stream,
+    phases: Stream,
+    group: u64,
+) {
+    let mut words: Words = [0; GROUP];
+    luck.words(group, &mut words);
+    let mut any = 0;
+    for i in 0..GROUP {
+        let out = words[i] >> 1 < below;
+        any |= u32::from(out);
+        words[i] = u32::from(out);
+    }
+    if any == 0 {
         return;
     }
-    let mut luck = vec![0.0; draw.state.len()];
-    Stream::new(seed, Purpose::Dropout, trial).uniforms(0, &mut luck);
-    let mut phases = Stream::new(seed, Purpose::UnlockedPhase, trial);
-    for (n, luck) in luck.into_iter().enumerate() {
-        if luck >= probability {
-            continue;
-        }
-        match dropped {
-            Dropped::Dark => {
-                draw.state[n] = State::Dark;
-                draw.amplitude[n] = 0.0;
+    match dropped {
+        Dropped::Dark => {
+            for i in 0..GROUP {
+                if words[i] != 0 {
+                    block.amplitude[i] = 0.0;
+                    block.state[i] = State::Dark;
+                }
             }
-            Dropped::Unlocked => {
-                let mut turn = [0.0];
-                phases.uniforms(n, &mut turn);
-                draw.state[n] = State::Unlocked;
-                draw.phase_rad[n] = TAU * turn[0];
+        }
+        Dropped::Unlocked => {
+            let mut azimuths: Words = [0; GROUP];
+            phases.words(group, &mut azimuths);
+            for i in 0..GROUP {
+                if words[i] != 0 {
+                    block.turns[i] = turns(azimuths[i]);
+                    block.state[i] = State::Unlocked;
+                }
             }
         }
     }

@@ -1,34 +1,27 @@
 //! Pointing jitter: zero-mean normal tilts, per axis, of each element and of the whole array.
 
-use super::Draw;
-use super::stream::{Purpose, Stream};
-use crate::array::Array;
+use super::block::Block;
+use super::stream::{Stream, Words};
+use super::vector::normal_pair;
+use crate::array::bands::GROUP;
 
-pub(super) fn draw(draw: &mut Draw, rms_rad: f64, seed: u64, trial: u64) {
-    if rms_rad > 0.0 {
-        let mut stream = Stream::new(seed, Purpose::Jitter, trial);
-        let mut pair = [0.0; 2];
-        for n in 0..draw.tilt_x_rad.len() {
-            stream.normals(2 * n, &mut pair);
-            draw.tilt_x_rad[n] += rms_rad * pair[0];
-            draw.tilt_y_rad[n] += rms_rad * pair[1];
-        }
+/// Each slot's two words give its tilts along x and y.
+#[inline(always)]
+pub fn draw<const FUSED: bool>(block: &mut Block, rms_rad: f32, stream: Stream, group: u64) {
+    let mut words: [Words; 2] = [[0; GROUP]; 2];
+    stream.words(2 * group, &mut words[0]);
+    stream.words(2 * group + 1, &mut words[1]);
+    for i in 0..GROUP {
+        let (cos, sin) = normal_pair::<FUSED>(words[0][i], words[1][i]);
+        block.tilt_x_rad[i] = rms_rad * cos;
+        block.tilt_y_rad[i] = rms_rad * sin;
     }
 }
 
-/// The whole array tilted about the axis: each element takes the tilt, and the
-/// piston k δ₀·r that its centre moves by.
-pub(super) fn draw_common(draw: &mut Draw, array: &Array, rms_rad: f64, seed: u64, trial: u64) {
-    if rms_rad > 0.0 {
-        let mut pair = [0.0; 2];
-        Stream::new(seed, Purpose::CommonJitter, trial).normals(0, &mut pair);
-        let (tilt_x, tilt_y) = (rms_rad * pair[0], rms_rad * pair[1]);
-        draw.common_tilt_rad = (tilt_x, tilt_y);
-        for n in 0..array.len() {
-            draw.phase_rad[n] +=
-                array.wavenumber() * (tilt_x * array.x_m[n] + tilt_y * array.y_m[n]);
-            draw.tilt_x_rad[n] += tilt_x;
-            draw.tilt_y_rad[n] += tilt_y;
-        }
-    }
+/// Tilt of the whole array in a trial.
+pub fn common_tilt_rad(rms_rad: f64, stream: Stream) -> (f64, f64) {
+    let mut words: Words = [0; GROUP];
+    stream.words(0, &mut words);
+    let (cos, sin) = normal_pair::<false>(words[0], words[1]);
+    (rms_rad * f64::from(cos), rms_rad * f64::from(sin))
 }

@@ -5,6 +5,7 @@ use super::tables;
 use super::units::significant;
 use crate::farfield::Map;
 use crate::figures::Figures;
+use crate::perturb::{TrialErrors, for_each_element};
 use crate::scenario::Figure;
 use crate::study::assess::Outcome;
 use rayon::prelude::*;
@@ -93,19 +94,19 @@ fn map(outcome: &Outcome, what: &str, map: &Map, figures: &Figures) -> Vec<u8> {
 }
 
 fn aperture(outcome: &Outcome) -> Vec<u8> {
-    let array = &outcome.setup.array;
-    // The piston that a tilt of the whole array brings would drown the elements' own.
-    let mut draw = outcome.shown.draw.clone();
-    let (tilt_x, tilt_y) = draw.common_tilt_rad;
-    for (n, phase) in draw.phase_rad.iter_mut().enumerate() {
-        *phase -= array.wavenumber() * (tilt_x * array.x_m[n] + tilt_y * array.y_m[n]);
-    }
+    let setup = &outcome.setup;
+    let trial = TrialErrors {
+        errors: &setup.scenario.errors,
+        seed: setup.scenario.run.seed,
+        trial: outcome.shown.trial,
+    };
     AperturePicture {
-        title: &outcome.setup.scenario.title,
+        title: &setup.scenario.title,
         what: &shown_caption(outcome),
-        array,
-        draw: &draw,
-        wavelength_m: array.wavelength_m,
+        element: setup.array.element,
+        envelope_diameter_m: setup.array.envelope_diameter_m,
+        elements: &|visit| for_each_element(&setup.array, trial, visit),
+        wavelength_m: setup.array.wavelength_m,
     }
     .png()
 }

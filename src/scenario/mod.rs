@@ -322,3 +322,17 @@ impl Scenario {
         }
     }
 }
+
+impl Errors {
+    /// No errors at all.
+    pub fn none() -> Errors {
+        Errors {
+            piston_rad: Contributions::default(),
+            jitter_rad: Contributions::default(),
+            common_jitter_rad: Contributions::default(),
+            dropout: 0.0,
+            dropped: Dropped::Dark,
+            power_spread: 0.0,
+        }
+    }
+}

@@ -7,8 +7,8 @@ use crate::farfield::closed_form::{Moments, mean_map};
 use crate::farfield::{FarField, Map};
 use crate::figures::lobes::{Lobe, brightest};
 use crate::figures::{Figures, Reading};
-use crate::perturb::Draw;
-use crate::scenario::{Contributions, Errors, Figure};
+use crate::perturb::TrialErrors;
+use crate::scenario::{Errors, Figure};
 use crate::trials::statistics::{Summary, Undefined, quantile};
 use crate::trials::{Machine, Progress, Trials, run};
 
@@ -62,8 +62,6 @@ pub struct Alone {
 pub struct Shown {
     /// Its number.
     pub trial: u64,
-    /// Its errors.
-    pub draw: Draw,
     /// Its map.
     pub map: Map,
     /// Its figures.
@@ -92,7 +90,6 @@ pub fn assess(setup: Setup, progress: &dyn Progress) -> Outcome {
     let count = setup.scenario.run.trials;
     let far_field = prepare(&setup.choice, &setup.array, setup.grid, setup.tilts, 0.0);
     let machine = Machine {
-        array: &setup.array,
         errors: &setup.scenario.errors,
         seed: setup.scenario.run.seed,
         far_field: far_field.as_ref(),
@@ -180,12 +177,18 @@ fn shown_trial(setup: &Setup, trials: &Trials, far_field: &dyn FarField) -> Show
         .unwrap_or(0);
     let trial = trials.trials[index].trial;
     let errors = &setup.scenario.errors;
-    let draw = Draw::of_trial(&setup.array, errors, setup.scenario.run.seed, trial);
     let mut map = Map::dark(setup.grid);
-    far_field.worker().irradiance(&draw, &mut map);
+    let seed = setup.scenario.run.seed;
+    far_field.worker().irradiance(
+        TrialErrors {
+            errors,
+            seed,
+            trial,
+        },
+        &mut map,
+    );
     Shown {
         trial,
-        draw,
         map,
         figures: trials.trials[index].figures,
     }
@@ -224,12 +227,8 @@ fn predictions(setup: &Setup) -> (Predicted, Vec<Alone>) {
 /// For each source that is not zero, the errors with that source alone.
 fn each_alone(errors: &Errors) -> Vec<(&'static str, Errors)> {
     let none = Errors {
-        piston_rad: Contributions::default(),
-        jitter_rad: Contributions::default(),
-        common_jitter_rad: Contributions::default(),
-        dropout: 0.0,
         dropped: errors.dropped,
-        power_spread: 0.0,
+        ..Errors::none()
     };
     let mut alone = Vec::new();
     let mut with = |source, present: bool, errors: Errors| {

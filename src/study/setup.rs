@@ -6,8 +6,8 @@ use crate::error::ScenarioError;
 use crate::farfield::choose::{Choice, MEMORY_LIMIT_BYTES, Refusal, Tilts, choose, prepare};
 use crate::farfield::{Grid, Map};
 use crate::figures::{Reader, Reading};
-use crate::perturb::Draw;
-use crate::scenario::{Figure, Scenario, Window};
+use crate::perturb::TrialErrors;
+use crate::scenario::{Errors, Figure, Scenario, Window};
 
 /// Most pixels a side that an automatic window takes for the 80 % circle.
 const MOST_AUTO_PIXELS: usize = 2047;
@@ -143,7 +143,7 @@ fn without_errors(
     let mut map = Map::dark(grid);
     prepare(&quiet, array, grid, still, 0.0)
         .worker()
-        .irradiance(&Draw::none(array.len()), &mut map);
+        .irradiance(TrialErrors::none(&Errors::none()), &mut map);
     let mut reader = Reader::new(array, grid, scenario.target.bucket_diameter_m);
     let reading = reader.set_reference(array, &map);
     Ok((choice, reader, map, reading))

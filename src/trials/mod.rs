@@ -6,10 +6,9 @@
 
 pub mod statistics;
 
-use crate::array::Array;
 use crate::farfield::{FarField, Map};
 use crate::figures::{Figures, Reader};
-use crate::perturb::{Draw, State};
+use crate::perturb::TrialErrors;
 use crate::scenario::Errors;
 use std::collections::BTreeMap;
 use std::sync::Mutex;
@@ -29,9 +28,7 @@ pub trait Progress: Sync {
 /// What repeats a trial.
 #[derive(Clone, Copy)]
 pub struct Machine<'a> {
-    /// The array.
-    pub array: &'a Array,
-    /// Its errors.
+    /// The errors.
     pub errors: &'a Errors,
     /// Seed of every stream.
     pub seed: u64,
@@ -75,16 +72,6 @@ pub struct Trials {
     pub mean_power_w: f64,
 }
 
-/// Power of a draw in watts.
-pub fn power_w(array: &Array, draw: &Draw) -> f64 {
-    array
-        .amplitude
-        .iter()
-        .zip(&draw.amplitude)
-        .map(|(amplitude, factor)| (amplitude * factor).powi(2))
-        .sum()
-}
-
 /// Run trials 0 to `count`, on at most `workers` threads of the current pool.
 pub fn run(machine: Machine<'_>, count: u64, workers: usize, progress: &dyn Progress) -> Trials {
     let gathered = Mutex::new(Gathered {
@@ -103,7 +90,6 @@ pub fn run(machine: Machine<'_>, count: u64, workers: usize, progress: &dyn Prog
         let mut worker = machine.far_field.worker();
         let mut workspace = machine.reader.workspace();
         let mut map = Map::dark(machine.far_field.grid());
-        let mut draw = Draw::default();
         loop {
             let number = next.fetch_add(1, Ordering::Relaxed);
             if number >= batches {
@@ -114,17 +100,18 @@ pub fn run(machine: Machine<'_>, count: u64, workers: usize, progress: &dyn Prog
                 sum: Map::dark(machine.far_field.grid()),
             };
             for trial in number * BATCH..((number + 1) * BATCH).min(count) {
-                draw.redraw(machine.array, machine.errors, machine.seed, trial);
-                worker.irradiance(&draw, &mut map);
-                let reading =
-                    machine
-                        .reader
-                        .read(&map, power_w(machine.array, &draw), &mut workspace);
+                let errors = TrialErrors {
+                    errors: machine.errors,
+                    seed: machine.seed,
+                    trial,
+                };
+                let radiated = worker.irradiance(errors, &mut map);
+                let reading = machine.reader.read(&map, radiated.power_w, &mut workspace);
                 add(&mut batch.sum, &map);
                 batch.trials.push(Trial {
                     trial,
-                    dark: draw.count(State::Dark),
-                    unlocked: draw.count(State::Unlocked),
+                    dark: radiated.dark,
+                    unlocked: radiated.unlocked,
                     figures: reading.figures,
                     encircled: reading
                         .encircled

@@ -9,10 +9,10 @@ use super::style::{
 };
 use super::text::Anchor;
 use super::ticks::{Ticks, rounded_up};
-use crate::array::Array;
-use crate::perturb::{Draw, State};
+use crate::perturb::{Seen, State};
 use crate::quantity::Kind;
 use crate::report::units::{readable, unit_for};
+use crate::scenario::Element;
 use std::f64::consts::{PI, TAU};
 
 const SIDE: usize = 560;
@@ -28,19 +28,41 @@ const MOST_MARKS: usize = 2000;
 /// as far as the hues are strong.
 const OPEN_END: f64 = 0.62;
 
+/// Calls back with every element, as often as it is asked to.
+pub type Elements<'a> = &'a dyn Fn(&mut dyn FnMut(Seen));
+
 /// An array as drawn in one trial.
-#[derive(Debug, Clone, Copy)]
+#[derive(Clone, Copy)]
 pub struct AperturePicture<'a> {
     /// Title of the study.
     pub title: &'a str,
     /// What is shown, e.g. `one trial, no. 17`.
     pub what: &'a str,
-    /// The array.
-    pub array: &'a Array,
-    /// Its errors in the trial; an element without an entry has none.
-    pub draw: &'a Draw,
+    /// The element at every site.
+    pub element: Element,
+    /// Diameter of the circle around the array.
+    pub envelope_diameter_m: f64,
+    /// Every element with its phase and state.
+    pub elements: Elements<'a>,
     /// Wavelength, for its note.
     pub wavelength_m: f64,
+}
+
+impl std::fmt::Debug for AperturePicture<'_> {
+    fn fmt(&self, f: &mut std::fmt::Formatter<'_>) -> std::fmt::Result {
+        f.debug_struct("AperturePicture")
+            .field("title", &self.title)
+            .finish_non_exhaustive()
+    }
+}
+
+/// How many elements are in each state, and how far phases reach.
+#[derive(Debug, Clone, Copy, Default)]
+struct Census {
+    lit: usize,
+    dark: usize,
+    unlocked: usize,
+    largest_phase_rad: f64,
 }
 
 /// Phase to colour.
@@ -97,21 +119,17 @@ impl AperturePicture<'_> {
         let mut canvas = Canvas::new(NARROW, HEIGHT);
         heading(&mut canvas, self.title, self.what);
         let rect = Rect::sized(LEFT, TOP, SIDE as f64, SIDE as f64);
-        let envelope_m = self.array.envelope_diameter_m;
+        let envelope_m = self.envelope_diameter_m;
         let half_width_m = if envelope_m.is_finite() && envelope_m > 0.0 {
             0.53 * envelope_m
         } else {
             1.0
         };
         let frame = Frame::about_zero(rect, half_width_m);
-        let scale = Scale::holding(
-            (0..self.array.len())
-                .filter(|index| self.state(*index) == State::Lit)
-                .map(|index| self.phase_rad(index).abs())
-                .fold(0.0, f64::max),
-        );
+        let census = self.census();
+        let scale = Scale::holding(census.largest_phase_rad);
         let px_per_m = SIDE as f64 / (2.0 * half_width_m);
-        let outlined = Outlined::new(&self.array.element, px_per_m);
+        let outlined = Outlined::new(&self.element, px_per_m);
         canvas.clipped(rect, |canvas| {
             if outlined.size_px < SMALLEST_SHAPE_PX {
                 self.cells(canvas, &frame, &scale, &outlined);
@@ -140,44 +158,50 @@ impl AperturePicture<'_> {
         canvas.text(&name, below, Anchor::Middle, BODY, TEXT);
 
         self.bar(&mut canvas, &scale);
-        self.states(&mut canvas, outlined.is_small());
+        self.states(&mut canvas, &census, outlined.is_small());
         canvas.into_png()
     }
 
-    fn state(&self, index: usize) -> State {
-        self.draw.state.get(index).copied().unwrap_or(State::Lit)
+    fn census(&self) -> Census {
+        let mut census = Census::default();
+        (self.elements)(&mut |seen| match seen.state {
+            State::Lit => {
+                census.lit += 1;
+                if seen.phase_rad.is_finite() {
+                    census.largest_phase_rad = census.largest_phase_rad.max(seen.phase_rad.abs());
+                }
+            }
+            State::Dark => census.dark += 1,
+            State::Unlocked => census.unlocked += 1,
+        });
+        census
     }
 
-    fn phase_rad(&self, index: usize) -> f64 {
-        let phase_rad = self.draw.phase_rad.get(index).copied().unwrap_or(0.0);
-        if phase_rad.is_finite() {
-            phase_rad
-        } else {
-            0.0
-        }
-    }
-
-    fn centres<'b>(&'b self, frame: &'b Frame) -> impl Iterator<Item = (usize, Point)> + 'b {
-        let pairs = self.array.x_m.iter().zip(&self.array.y_m);
-        pairs
-            .map(|(x, y)| frame.at(*x, *y))
-            .enumerate()
-            .filter(|(_, centre)| centre.0.is_finite() && centre.1.is_finite())
+    /// Every element that has a place, with its centre in pixels.
+    fn for_each(&self, frame: &Frame, visit: &mut dyn FnMut(Seen, Point)) {
+        (self.elements)(&mut |mut seen| {
+            let centre = frame.at(seen.x_m, seen.y_m);
+            if !seen.phase_rad.is_finite() {
+                seen.phase_rad = 0.0;
+            }
+            if centre.0.is_finite() && centre.1.is_finite() {
+                visit(seen, centre);
+            }
+        });
     }
 
     fn shapes(&self, canvas: &mut Canvas, frame: &Frame, scale: &Scale, outlined: &Outlined) {
-        for (index, centre) in self.centres(frame) {
-            if self.state(index) == State::Lit {
-                outlined.fill(canvas, centre, scale.colour(self.phase_rad(index)));
+        self.for_each(frame, &mut |seen, centre| {
+            if seen.state == State::Lit {
+                outlined.fill(canvas, centre, scale.colour(seen.phase_rad));
             }
-        }
+        });
         // Afterwards, so that no neighbour covers a mark.
-        for (index, centre) in self.centres(frame) {
-            let state = self.state(index);
-            if state != State::Lit {
-                outlined.marked(canvas, centre, state);
+        self.for_each(frame, &mut |seen, centre| {
+            if seen.state != State::Lit {
+                outlined.marked(canvas, centre, seen.state);
             }
-        }
+        });
     }
 
     /// Elements smaller than a few pixels: colour by the mean of what falls on a pixel.
@@ -186,12 +210,12 @@ impl AperturePicture<'_> {
         let mut marks = Vec::new();
         // Below a pixel an element still takes a pixel's width, so that none is lost.
         let half = 0.5 * outlined.size_px.max(1.0);
-        for (index, centre) in self.centres(frame) {
-            let state = self.state(index);
+        self.for_each(frame, &mut |seen, centre| {
+            let state = seen.state;
             if state != State::Lit && marks.len() <= MOST_MARKS {
                 marks.push((state, centre));
             }
-            let phase_rad = self.phase_rad(index);
+            let phase_rad = seen.phase_rad;
             let (sin, cos) = phase_rad.sin_cos();
             let (x, y) = (centre.0 - frame.rect.left, centre.1 - frame.rect.top);
             let range = |at: f64| {
@@ -219,7 +243,7 @@ impl AperturePicture<'_> {
                     }
                 }
             }
-        }
+        });
         canvas.paint(frame.rect, |column, row| {
             cells
                 .get(row * SIDE + column)
@@ -261,13 +285,8 @@ impl AperturePicture<'_> {
     }
 
     /// How many elements are in each state, with a sample of each.
-    fn states(&self, canvas: &mut Canvas, dots: bool) {
-        let count = |state: State| {
-            (0..self.array.len())
-                .filter(|index| self.state(*index) == state)
-                .count()
-        };
-        let sample = Outlined::new(&self.array.element, 26.0 / self.array.element.size_m);
+    fn states(&self, canvas: &mut Canvas, census: &Census, dots: bool) {
+        let sample = Outlined::new(&self.element, 26.0 / self.element.size_m);
         let mut baseline = TOP + 416.0;
         let mut line = |canvas: &mut Canvas, state: Option<State>, text: String| {
             let middle = (COLUMN + 16.0, baseline - 0.5 * BODY.capital_px());
@@ -288,20 +307,12 @@ impl AperturePicture<'_> {
             );
             baseline += 38.0;
         };
-        line(
-            canvas,
-            Some(State::Lit),
-            format!("lit: {}", count(State::Lit)),
-        );
-        line(
-            canvas,
-            Some(State::Dark),
-            format!("dark: {}", count(State::Dark)),
-        );
+        line(canvas, Some(State::Lit), format!("lit: {}", census.lit));
+        line(canvas, Some(State::Dark), format!("dark: {}", census.dark));
         line(
             canvas,
             Some(State::Unlocked),
-            format!("unlocked: {}", count(State::Unlocked)),
+            format!("unlocked: {}", census.unlocked),
         );
         if self.wavelength_m.is_finite() && self.wavelength_m > 0.0 {
             let wave = readable(self.wavelength_m, Kind::Length, 4);

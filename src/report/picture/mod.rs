@@ -25,9 +25,8 @@ pub use map::MapPicture;
 #[cfg(test)]
 mod tests {
     use super::*;
-    use crate::array::Array;
     use crate::farfield::map::{Grid, Map};
-    use crate::perturb::{Draw, State};
+    use crate::perturb::{Seen, State};
     use crate::scenario::{Element, Shape};
 
     fn assert_size(png: &[u8], width: u32, height: u32) {
@@ -101,37 +100,27 @@ mod tests {
         phase_rad: f64,
         envelope_diameter_m: f64,
     ) -> Vec<u8> {
-        let count = x_m.len();
-        let array = Array {
-            x_m: x_m.to_vec(),
-            y_m: vec![0.0; count],
-            amplitude: vec![1.0; count],
-            phase_rad: vec![0.0; count],
-            tilt_x_rad: vec![0.0; count],
-            tilt_y_rad: vec![0.0; count],
+        let states = [State::Lit, State::Dark, State::Unlocked];
+        AperturePicture {
+            title: "title",
+            what: "",
             element: Element {
                 shape: Shape::Hexagon,
                 size_m,
                 obscuration: 0.3,
                 beam_radius_m: None,
             },
-            lattice: None,
             envelope_diameter_m,
-            wavelength_m: 1e-6,
-            range_m: 1.0,
-            curvature_per_m: 0.0,
-        };
-        let states = [State::Lit, State::Dark, State::Unlocked];
-        let draw = Draw {
-            phase_rad: vec![phase_rad; count],
-            state: states.into_iter().cycle().take(count).collect(),
-            ..Draw::default()
-        };
-        AperturePicture {
-            title: "title",
-            what: "",
-            array: &array,
-            draw: &draw,
+            elements: &|visit| {
+                for (&x_m, state) in x_m.iter().zip(states.into_iter().cycle()) {
+                    visit(Seen {
+                        x_m,
+                        y_m: 0.0,
+                        phase_rad,
+                        state,
+                    });
+                }
+            },
             wavelength_m: 1e-6,
         }
         .png()
