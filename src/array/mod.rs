@@ -187,6 +187,19 @@ impl Array {
         }
     }
 
+    /// Bound on |x| and |y| of every site, idle columns of a lattice included.
+    pub fn reach_m(&self) -> f64 {
+        let half_m = self.envelope_diameter_m / 2.0;
+        let Some(sites) = self.lattice() else {
+            return half_m;
+        };
+        let last = sites.columns.saturating_sub(1);
+        [0, 1]
+            .into_iter()
+            .flat_map(|parity| [sites.x_m(parity, 0), sites.x_m(parity, last)])
+            .fold(half_m, |reach, x| reach.max(x.abs()))
+    }
+
     /// k = 2π/λ in rad/m.
     pub fn wavenumber(&self) -> f64 {
         TAU / self.wavelength_m

@@ -1,28 +1,80 @@
 //! Which method computes a map, what it costs, and whether it fits in memory.
 
+use super::factored::expand;
 use super::pattern::{ElementPattern, Wavefront};
-use super::{Direct, FarField, Grid, Method, Sampled, SampledPlan, cells_across_element};
-use crate::array::Array;
-use crate::scenario::MethodChoice;
+use super::tilt::TiltExpansion;
+use super::{Direct, Factored, FarField, Grid, Method, Sampled, SampledPlan, cells_across_element};
+use crate::array::{Array, Sites};
+use crate::scenario::{Errors, MethodChoice};
 
 /// What a far field may hold in memory, all workers together.
 pub const MEMORY_LIMIT_BYTES: f64 = 4e9;
 
-/// A method for an array and a map, with its cost foreseen.
+/// The maps that are wanted, and the tilts that elements will have in them.
 #[derive(Debug, Clone, Copy, PartialEq)]
+pub struct Task {
+    /// Grid of the maps.
+    pub grid: Grid,
+    /// Rms per axis of each element's own tilt.
+    pub jitter_rad: f64,
+    /// Rms per axis of the tilt of all.
+    pub common_jitter_rad: f64,
+    /// Rms per axis of tilts over which each element's field is averaged instead, as in [`Wavefront`].
+    pub mean_over_tilt_rad: f64,
+}
+
+impl Task {
+    /// Maps without random tilts.
+    pub fn still(grid: Grid) -> Task {
+        Task {
+            grid,
+            jitter_rad: 0.0,
+            common_jitter_rad: 0.0,
+            mean_over_tilt_rad: 0.0,
+        }
+    }
+
+    /// Maps of trials with these errors.
+    pub fn of_trials(grid: Grid, errors: &Errors) -> Task {
+        Task {
+            jitter_rad: errors.jitter_rad.rms(),
+            common_jitter_rad: errors.common_jitter_rad.rms(),
+            ..Task::still(grid)
+        }
+    }
+
+    /// The mean field over jitter.
+    pub fn mean_field(grid: Grid, jitter_rad: f64) -> Task {
+        Task {
+            mean_over_tilt_rad: jitter_rad,
+            ..Task::still(grid)
+        }
+    }
+}
+
+/// A method for an array and a task, with its cost foreseen.
+#[derive(Debug, Clone)]
 pub struct Choice {
-    /// The method.
-    pub method: Method,
+    /// The task.
+    pub task: Task,
+    /// How it is done.
+    plan: Plan,
     /// Bytes held once.
     pub shared_bytes: f64,
     /// Bytes held by each worker.
     pub worker_bytes: f64,
-    /// Seconds to set up, on one core of a 2020s desktop processor.
+    /// Seconds to set up, on one core of the reference machine.
     pub setup_s: f64,
     /// Seconds a trial, on one such core.
     pub trial_s: f64,
-    /// Grid of the sampled method.
-    pub sampled: SampledPlan,
+}
+
+/// What a method needs to know in advance.
+#[derive(Debug, Clone)]
+enum Plan {
+    Direct,
+    Sampled(SampledPlan),
+    Factored(TiltExpansion),
 }
 
 /// Why no method can be used.
@@ -35,107 +87,111 @@ pub struct Refusal {
 }
 
 impl Choice {
-    /// Why this method, in a few words.
-    pub fn reason(&self) -> String {
-        match self.method {
-            Method::Direct => "the sum over elements is the cheapest here".to_string(),
-            Method::Sampled => format!(
-                "the aperture painted on {0} × {0} points, one pruned transform a trial",
-                self.sampled.length
-            ),
+    /// The method.
+    pub fn method(&self) -> Method {
+        match self.plan {
+            Plan::Direct => Method::Direct,
+            Plan::Sampled(_) => Method::Sampled,
+            Plan::Factored(_) => Method::Factored,
         }
     }
-}
 
-/// The tilts that an array's elements will have.
-#[derive(Debug, Clone, Copy, Default, PartialEq)]
-pub struct Tilts {
-    /// Rms per axis of each element's own tilt.
-    pub jitter_rad: f64,
-    /// Rms per axis of the tilt of all.
-    pub common_jitter_rad: f64,
-}
+    /// What the method does, in a few words.
+    pub fn description(&self) -> String {
+        match &self.plan {
+            Plan::Direct => "the plain sum over elements".to_string(),
+            Plan::Sampled(plan) => {
+                format!("the aperture painted on {0} × {0} points", plan.length)
+            }
+            Plan::Factored(expansion) => match expansion.terms() {
+                1 => "element pattern × array factor".to_string(),
+                terms => format!("element pattern × array factor, tilts in {terms} terms"),
+            },
+        }
+    }
 
-impl Tilts {
-    /// Six deviations of both together: more than any draw reaches in practice.
-    fn largest_rad(&self) -> f64 {
-        6.0 * self.jitter_rad.hypot(self.common_jitter_rad)
+    /// Make the method ready.
+    pub fn prepare<'a>(&self, array: &'a Array) -> Box<dyn FarField + 'a> {
+        let task = self.task;
+        match &self.plan {
+            Plan::Direct => Box::new(Direct::new(array, task)),
+            Plan::Sampled(plan) => Box::new(Sampled::new(
+                array,
+                task.grid,
+                *plan,
+                task.mean_over_tilt_rad,
+            )),
+            Plan::Factored(expansion) => {
+                Box::new(Factored::new(array, task.grid, expansion.clone()))
+            }
+        }
+    }
+
+    fn fits(&self) -> bool {
+        self.shared_bytes + self.worker_bytes <= MEMORY_LIMIT_BYTES
+    }
+
+    /// This choice, unless it exceeds the memory limit.
+    fn if_it_fits(self, elements: usize) -> Result<Choice, Refusal> {
+        if self.fits() {
+            return Ok(self);
+        }
+        Err(Refusal {
+            found: format!(
+                "`{}` would need {:.1} GB for {elements} elements and {pixels} × {pixels} pixels",
+                self.method().name(),
+                (self.shared_bytes + self.worker_bytes) / 1e9,
+                pixels = self.task.grid.pixels,
+            ),
+            advice: format!(
+                "at most {:.0} GB are used: take method = \"auto\", fewer elements or a smaller window",
+                MEMORY_LIMIT_BYTES / 1e9
+            ),
+        })
     }
 }
 
-/// Choose a method.
+/// Choose a method: with `Auto` factored where it applies, else sampled where it fits, else direct.
 ///
 /// # Errors
-/// The method asked for (or, with `Auto`, every method) exceeds the memory limit, or is not one of these.
-pub fn choose(
-    array: &Array,
-    grid: Grid,
-    tilts: Tilts,
-    requested: MethodChoice,
-) -> Result<Choice, Refusal> {
-    let pixels = (grid.pixels as f64).powi(2);
-    if 8.0 * pixels * 4.0 > MEMORY_LIMIT_BYTES {
+/// The method asked for (or, with `Auto`, every method) exceeds the memory limit or does not apply.
+pub fn choose(array: &Array, task: Task, requested: MethodChoice) -> Result<Choice, Refusal> {
+    let pixels = task.grid.pixels as f64;
+    if 100.0 * pixels * pixels > MEMORY_LIMIT_BYTES {
         return Err(Refusal {
-            found: format!("a map of {0} × {0} pixels", grid.pixels),
+            found: format!("a map of {0} × {0} pixels", task.grid.pixels),
             advice: "use a smaller run.window or run.samples_per_spot".to_string(),
         });
     }
-    let direct = direct_choice(array, grid, tilts);
-    let sampled = sampled_choice(array, grid, tilts);
-    let fits = |choice: &Choice| choice.shared_bytes + choice.worker_bytes <= MEMORY_LIMIT_BYTES;
+    let elements = array.len();
     match requested {
-        MethodChoice::Direct => Ok(direct),
-        MethodChoice::Sampled if fits(&sampled) => Ok(sampled),
-        MethodChoice::Auto => Ok(if fits(&sampled) && sampled.trial_s < direct.trial_s {
-            sampled
-        } else {
-            direct
+        MethodChoice::Direct => direct(array, task).if_it_fits(elements),
+        MethodChoice::Sampled => sampled(array, task).if_it_fits(elements),
+        MethodChoice::Factored => factored(array, task)
+            .ok_or(Refusal {
+                found: "tilts too large for `factored`".to_string(),
+                advice: "its elements' tilts must stay within about half of wavelength/size: take method = \"auto\" or \"sampled\"".to_string(),
+            })?
+            .if_it_fits(elements),
+        MethodChoice::Auto => {
+            if let Some(choice) = factored(array, task).filter(Choice::fits) {
+                return Ok(choice);
+            }
+            let sampled = sampled(array, task);
+            if sampled.fits() {
+                return Ok(sampled);
+            }
+            direct(array, task).if_it_fits(elements)
+        }
+        MethodChoice::ClosedForm => Err(Refusal {
+            found: "`closed_form` for a map of trials".to_string(),
+            advice: "it computes means only".to_string(),
         }),
-        MethodChoice::Sampled => Err(Refusal {
-            found: format!(
-                "`sampled` would need {:.1} GB ({} elements on a grid of {} across)",
-                (sampled.shared_bytes + sampled.worker_bytes) / 1e9,
-                array.len(),
-                sampled.sampled.length
-            ),
-            advice: format!(
-                "at most {:.0} GB are used: take method = \"direct\", fewer elements or a smaller window",
-                MEMORY_LIMIT_BYTES / 1e9
-            ),
-        }),
-        MethodChoice::Factored | MethodChoice::ClosedForm => Err(Refusal {
-            found: "a method that this version does not have".to_string(),
-            advice: "use \"auto\", \"sampled\" or \"direct\"".to_string(),
-        }),
-    }
-}
-
-/// Make a method ready; `mean_over_tilt_rad` as in [`Wavefront`].
-pub fn prepare<'a>(
-    choice: &Choice,
-    array: &'a Array,
-    grid: Grid,
-    tilts: Tilts,
-    mean_over_tilt_rad: f64,
-) -> Box<dyn FarField + 'a> {
-    match choice.method {
-        Method::Direct => Box::new(Direct::new(
-            array,
-            grid,
-            mean_over_tilt_rad,
-            tilts.jitter_rad.hypot(tilts.common_jitter_rad),
-        )),
-        Method::Sampled => Box::new(Sampled::new(
-            array,
-            grid,
-            choice.sampled,
-            mean_over_tilt_rad,
-        )),
     }
 }
 
 /// Seconds of one round of [`reference_work`] on the machine that the costs below were taken on.
-pub const REFERENCE_WORK_S: f64 = 25e-6;
+pub const REFERENCE_WORK_S: f64 = 10.5e-6;
 
 /// Arithmetic of the kind that a trial is made of, to compare machines by.
 pub fn reference_work(rounds: usize) {
@@ -151,54 +207,89 @@ pub fn reference_work(rounds: usize) {
 }
 
 /// One complex multiply-add in a vectorised loop.
-const MULTIPLY_ADD_S: f64 = 1.0e-9;
+const MULTIPLY_ADD_S: f64 = 0.7e-9;
 /// One sine and cosine.
-const PHASOR_S: f64 = 20e-9;
-/// One butterfly of a long transform: length × log₂ length of these make an FFT.
-const BUTTERFLY_S: f64 = 0.9e-9;
+const PHASOR_S: f64 = 15e-9;
+/// One butterfly: length × log₂ length of these make an FFT.
+const BUTTERFLY_S: f64 = 0.35e-9;
 /// One cell of a painted row.
-const CELL_S: f64 = 4e-9;
+const CELL_S: f64 = 3e-9;
 /// Covered area of one cell.
 const COVER_S: f64 = 60e-9;
+/// Drawing one element's errors of every kind.
+const DRAW_S: f64 = 5e-9;
 
-fn direct_choice(array: &Array, grid: Grid, tilts: Tilts) -> Choice {
-    let (elements, pixels) = (array.len() as f64, grid.pixels as f64);
-    let each_its_own = tilts.jitter_rad > 0.0 || array.largest_tilt_rad() > 0.0;
+/// Seconds of one transform of a length.
+fn transform_s(length: usize) -> f64 {
+    length as f64 * (length as f64).log2() * BUTTERFLY_S
+}
+
+fn direct(array: &Array, task: Task) -> Choice {
+    let (elements, pixels) = (array.len() as f64, task.grid.pixels as f64);
+    let each_its_own = task.jitter_rad > 0.0 || array.largest_tilt_rad() > 0.0;
     let pattern = ElementPattern::new(
         &array.element,
         array.wavenumber(),
         Wavefront {
             curvature_per_m: array.curvature_per_m,
-            mean_over_tilt_rad: 0.0,
+            mean_over_tilt_rad: task.mean_over_tilt_rad,
         },
-        super::largest_angle_rad(array, grid, tilts.jitter_rad),
+        super::largest_angle_rad(array, task),
     );
     let patterns = if each_its_own { elements } else { 1.0 };
-    let trial_s = elements * pixels * (PHASOR_S + pixels * MULTIPLY_ADD_S)
-        + patterns * pixels * pixels * pattern.evaluations() * PHASOR_S;
     Choice {
-        method: Method::Direct,
-        shared_bytes: 0.0,
-        worker_bytes: pixels * (24.0 * pixels + 16.0 * 512.0) + 40.0 * elements,
+        task,
+        plan: Plan::Direct,
+        shared_bytes: 48.0 * elements,
+        worker_bytes: pixels * (16.0 * pixels + 16.0 * 512.0) + 33.0 * elements,
         setup_s: 0.0,
-        trial_s,
-        sampled: SampledPlan::new(array, grid, cells_across_element(array, grid), 0.0),
+        trial_s: elements * pixels * (PHASOR_S + pixels * MULTIPLY_ADD_S)
+            + patterns * pixels * pixels * pattern.evaluations() * PHASOR_S,
     }
 }
 
-fn sampled_choice(array: &Array, grid: Grid, tilts: Tilts) -> Choice {
-    let largest = array.largest_tilt_rad() + tilts.largest_rad();
-    let plan = SampledPlan::new(array, grid, cells_across_element(array, grid), largest);
-    let length = plan.length as f64;
-    let transforms = (plan.rows + grid.pixels) as f64;
+fn sampled(array: &Array, task: Task) -> Choice {
+    let random = 6.0 * task.jitter_rad.hypot(task.common_jitter_rad);
+    let plan = SampledPlan::new(
+        array,
+        task.grid,
+        cells_across_element(array, task.grid),
+        array.largest_tilt_rad() + random,
+    );
+    let transforms = (plan.rows + task.grid.pixels) as f64;
     let cells = plan.shared_bytes / 8.0;
     let uniform = array.element.beam_radius_m.is_none() && array.curvature_per_m.abs() < 1e-30;
     Choice {
-        method: Method::Sampled,
+        task,
         shared_bytes: plan.shared_bytes,
         worker_bytes: plan.worker_bytes,
         setup_s: cells * COVER_S * if uniform { 1.0 } else { 5.0 },
-        trial_s: transforms * length * length.log2() * BUTTERFLY_S + cells * CELL_S,
-        sampled: plan,
+        trial_s: transforms * transform_s(plan.length) + cells * CELL_S,
+        plan: Plan::Sampled(plan),
     }
+}
+
+fn factored(array: &Array, task: Task) -> Option<Choice> {
+    let expansion = expand(array, task)?;
+    let axis = super::kernel::Axis::new(array, task.grid);
+    let (elements, pixels) = (array.len() as f64, task.grid.pixels as f64);
+    let (terms, cells) = (expansion.terms() as f64, axis.cells as f64);
+    let spread_s = match array.sites {
+        Sites::Lattice { .. } => 1.0e-9,
+        Sites::List(_) => 60e-9,
+    };
+    let listed_bytes = match array.sites {
+        Sites::Lattice { .. } => 0.0,
+        Sites::List(_) => 130.0 * elements,
+    };
+    Some(Choice {
+        task,
+        shared_bytes: listed_bytes + 16.0 * terms * pixels * pixels,
+        worker_bytes: 16.0 * (terms * cells * cells + cells * pixels + 2.0 * pixels * pixels)
+            + 64.0 * terms * cells,
+        setup_s: 1e-3 + 30e-9 * terms * pixels * pixels,
+        trial_s: elements * (DRAW_S + terms * spread_s)
+            + terms * ((cells + pixels) * transform_s(axis.length) + 6e-9 * pixels * pixels),
+        plan: Plan::Factored(expansion),
+    })
 }

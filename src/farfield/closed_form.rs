@@ -11,7 +11,7 @@
 //! convolves the result with a normal distribution. It needs independent elements:
 //! grouped failures and correlated surfaces need Monte Carlo.
 
-use super::choose::{Choice, Refusal, Tilts, choose, prepare};
+use super::choose::{Refusal, Task, choose};
 use super::map::{Grid, Map};
 use super::pattern::{ElementPattern, Wavefront};
 use super::smooth::Samples;
@@ -104,8 +104,12 @@ fn blur(fx: &f64, fy: &f64, sigma: f64) -> f64 {
 fn independent_mean(array: &Array, errors: &Errors, grid: Grid) -> Result<Map, Refusal> {
     let jitter_rad = errors.jitter_rad.rms();
     let moments = Moments::of(errors);
-    let choice: Choice = choose(array, grid, Tilts::default(), MethodChoice::Auto)?;
-    let far_field = prepare(&choice, array, grid, Tilts::default(), jitter_rad);
+    let choice = choose(
+        array,
+        Task::mean_field(grid, jitter_rad),
+        MethodChoice::Auto,
+    )?;
+    let far_field = choice.prepare(array);
     let mut map = Map::dark(grid);
     far_field
         .worker()

@@ -1,5 +1,6 @@
 //! `direct`: the sum over elements at each map point. Slow, obvious, exact.
 
+use super::choose::Task;
 use super::map::{Grid, Map};
 use super::pattern::{ElementPattern, Wavefront};
 use super::{FarField, Method, Radiated, Worker, largest_angle_rad};
@@ -21,22 +22,17 @@ pub struct Direct<'a> {
 }
 
 impl<'a> Direct<'a> {
-    /// Prepare the sum; `mean_over_tilt_rad` as in [`Wavefront`], `random_tilt_rad` the rms of the tilts to come.
-    pub fn new(
-        array: &'a Array,
-        grid: Grid,
-        mean_over_tilt_rad: f64,
-        random_tilt_rad: f64,
-    ) -> Direct<'a> {
+    /// Prepare the sum.
+    pub fn new(array: &'a Array, task: Task) -> Direct<'a> {
         let wavefront = Wavefront {
             curvature_per_m: array.curvature_per_m,
-            mean_over_tilt_rad,
+            mean_over_tilt_rad: task.mean_over_tilt_rad,
         };
-        let reach = largest_angle_rad(array, grid, random_tilt_rad);
+        let reach = largest_angle_rad(array, task);
         Direct {
             array,
             elements: array.list(),
-            grid,
+            grid: task.grid,
             pattern: ElementPattern::new(&array.element, array.wavenumber(), wavefront, reach),
         }
     }

@@ -6,18 +6,24 @@
 pub mod choose;
 pub mod closed_form;
 mod direct;
+mod factored;
 mod fft;
+mod kernel;
 pub mod map;
 mod paint;
 pub mod pattern;
 mod quadrature;
 mod sampled;
 mod smooth;
+mod tile;
+pub mod tilt;
 
 use crate::array::{Array, Elements};
 use crate::perturb::{Draw, State, TrialErrors};
+use choose::Task;
 
 pub use direct::Direct;
+pub use factored::{Factored, expand};
 pub use fft::good_length;
 pub use map::{Grid, Map};
 pub use sampled::{Sampled, SampledPlan, cells_across_element};
@@ -29,6 +35,8 @@ pub enum Method {
     Direct,
     /// One FFT of the painted aperture.
     Sampled,
+    /// Element pattern times array factor.
+    Factored,
 }
 
 impl Method {
@@ -37,6 +45,7 @@ impl Method {
         match self {
             Method::Direct => "direct",
             Method::Sampled => "sampled",
+            Method::Factored => "factored",
         }
     }
 }
@@ -83,7 +92,8 @@ impl Radiated {
 }
 
 /// The largest angle between a map point and an element's tilt, six deviations of random tilt included.
-fn largest_angle_rad(array: &Array, grid: Grid, random_tilt_rad: f64) -> f64 {
-    let corner = std::f64::consts::FRAC_1_SQRT_2 * grid.width_m() / array.range_m;
-    corner + std::f64::consts::SQRT_2 * (array.largest_tilt_rad() + 6.8 * random_tilt_rad)
+fn largest_angle_rad(array: &Array, task: Task) -> f64 {
+    let corner = std::f64::consts::FRAC_1_SQRT_2 * task.grid.width_m() / array.range_m;
+    let random = task.jitter_rad.hypot(task.common_jitter_rad);
+    corner + std::f64::consts::SQRT_2 * (array.largest_tilt_rad() + 6.7 * random)
 }

@@ -106,6 +106,75 @@ impl ElementPattern {
     }
 }
 
+/// A strip of an element: nodes and weights along y at one x.
+#[derive(Debug, Clone)]
+pub struct Strip {
+    /// Its x from the element's centre.
+    pub x_m: f64,
+    /// y from the element's centre, and the weight of the field there.
+    pub nodes: Vec<(f64, Complex64)>,
+}
+
+/// A rule for ∫ψ(s) F(s) d²s over the element, F a polynomial of `degree` times a wave
+/// of direction up to `largest_angle_rad`; an obscuration comes as strips of negative weight.
+pub fn element_strips(
+    element: &Element,
+    wavenumber: f64,
+    wavefront: Wavefront,
+    largest_angle_rad: f64,
+    degree: usize,
+) -> Vec<Strip> {
+    let q = wavefront.exponent_per_m2(element, wavenumber);
+    let reach = wavenumber * largest_angle_rad;
+    let scale = 1.0 / profile_power_m2(element).sqrt();
+    let half = element.size_m / 2.0;
+    let rule = |reach_m: f64| {
+        let turns = reach * reach_m + q.norm() * reach_m * reach_m;
+        gauss_legendre(16 + degree + turns.ceil() as usize, -reach_m, reach_m)
+    };
+    let strip = |x: f64, weight_x: f64, top: f64, scale: f64| Strip {
+        x_m: x,
+        nodes: rule(top)
+            .into_iter()
+            .map(|(y, weight)| {
+                let field = (-q * (x * x + y * y)).exp();
+                (y, scale * weight_x * weight * field)
+            })
+            .collect(),
+    };
+    // x = r sin φ: the strips' ends meet the circle smoothly.
+    let disc = |radius: f64, scale: f64| -> Vec<Strip> {
+        let turns = reach * radius + q.norm() * radius * radius;
+        gauss_legendre(24 + degree + turns.ceil() as usize, -PI / 2.0, PI / 2.0)
+            .into_iter()
+            .map(|(azimuth, weight)| {
+                let top = radius * azimuth.cos();
+                strip(radius * azimuth.sin(), weight * top, top, scale)
+            })
+            .collect()
+    };
+    let mut strips: Vec<Strip> = match element.shape {
+        Shape::Circle => disc(half, scale),
+        Shape::Square => rule(half)
+            .into_iter()
+            .map(|(x, weight)| strip(x, weight, half, scale))
+            .collect(),
+        Shape::Hexagon => {
+            // The slope breaks at x = 0: a rule on each side.
+            let turns = reach * half + q.norm() * half * half;
+            let side = gauss_legendre(14 + degree + turns.ceil() as usize, 0.0, half);
+            side.iter()
+                .flat_map(|&(x, weight)| [(x, weight), (-x, weight)])
+                .map(|(x, weight)| strip(x, weight, (element.size_m - x.abs()) / SQRT_3, scale))
+                .collect()
+        }
+    };
+    if element.obscuration > 0.0 {
+        strips.extend(disc(element.obscuration * half, -scale));
+    }
+    strips
+}
+
 /// ∫exp(−2s²/w²) over the open element: the profile's power for unit irradiance at its centre.
 pub fn profile_power_m2(element: &Element) -> f64 {
     let Some(radius_m) = element.beam_radius_m else {

@@ -8,7 +8,7 @@ use super::interpolate::Interpolant;
 use super::spot::{local_maxima, refine};
 use crate::array::Array;
 use crate::array::element::SQRT_3;
-use crate::farfield::choose::{Tilts, choose, prepare};
+use crate::farfield::choose::{Task, choose};
 use crate::farfield::pattern::{ElementPattern, Wavefront};
 use crate::farfield::{Direct, Grid, Map};
 use crate::perturb::TrialErrors;
@@ -45,12 +45,12 @@ pub fn brightest(array: &Array, window_m: f64) -> Vec<Lobe> {
     let width_m = window_m.max(2.0 * BEAM_WIDTHS * beam_m);
     let mut grid = Grid::covering(width_m, spot_m / SAMPLES_PER_SPOT);
     grid.pixels = grid.pixels.min(MOST_PIXELS);
-    let tilts = Tilts::default();
-    let Ok(choice) = choose(array, grid, tilts, MethodChoice::Auto) else {
+    let Ok(choice) = choose(array, Task::still(grid), MethodChoice::Auto) else {
         return Vec::new();
     };
     let mut map = Map::dark(grid);
-    prepare(&choice, array, grid, tilts, 0.0)
+    choice
+        .prepare(array)
         .worker()
         .irradiance(TrialErrors::none(&Errors::none()), &mut map);
     let interpolant = Interpolant::new(SAMPLES_PER_SPOT);
@@ -119,7 +119,7 @@ fn grating_lobes(array: &Array, seen: Grid) -> Vec<Lobe> {
         pixels: 1,
         pixel_m: 2.0 * reach * array.range_m,
     };
-    let direct = Direct::new(array, everywhere, 0.0, 0.0);
+    let direct = Direct::new(array, Task::still(everywhere));
     directions
         .into_iter()
         .map(|(theta_x_rad, theta_y_rad)| Lobe {

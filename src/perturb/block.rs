@@ -66,6 +66,11 @@ impl Recipe {
         }
     }
 
+    /// Whether elements tilt at random.
+    pub fn jitters(&self) -> bool {
+        self.jitter_rad > 0.0
+    }
+
     /// Whether elements may be out.
     pub fn drops(&self) -> bool {
         self.dropout_below > 0
@@ -76,8 +81,9 @@ impl Recipe {
         Stream::new(self.seed, purpose, self.trial)
     }
 
+    /// Draw the errors of a group into a block that only ever served this recipe's errors.
     #[inline(always)]
-    fn fill<const FUSED: bool>(&self, group: u64, block: &mut Block) {
+    pub fn fill<const FUSED: bool>(&self, group: u64, block: &mut Block) {
         if self.piston_turns > 0.0 {
             let stream = self.stream(Purpose::Piston);
             piston::draw::<FUSED>(block, self.piston_turns, stream, group);

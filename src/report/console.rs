@@ -316,7 +316,7 @@ fn setting(outcome: &Outcome) -> Vec<String> {
             "Run: {} trials, seed {}, method \"{}\".{predicted}",
             scenario.run.trials,
             scenario.run.seed,
-            setup.choice.method.name(),
+            setup.choice.method().name(),
         ),
     ]
 }

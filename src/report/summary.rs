@@ -39,7 +39,7 @@ pub fn of_assess(outcome: &Outcome, run: &RunInfo) -> Value {
         },
         "seed": setup.scenario.run.seed,
         "trials": setup.scenario.run.trials,
-        "method": setup.choice.method.name(),
+        "method": setup.choice.method().name(),
         "array": array(setup),
         "ideal": figures(&setup.ideal.figures),
         "mean_of_trials": statistics,

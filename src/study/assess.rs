@@ -2,7 +2,6 @@
 
 use super::requirement::{Verdict, judge};
 use super::setup::Setup;
-use crate::farfield::choose::prepare;
 use crate::farfield::closed_form::{Moments, mean_map};
 use crate::farfield::{FarField, Map};
 use crate::figures::lobes::{Lobe, brightest};
@@ -88,7 +87,7 @@ pub struct EncircledBand {
 /// Run the study on the current thread pool.
 pub fn assess(setup: Setup, progress: &dyn Progress) -> Outcome {
     let count = setup.scenario.run.trials;
-    let far_field = prepare(&setup.choice, &setup.array, setup.grid, setup.tilts, 0.0);
+    let far_field = setup.choice.prepare(&setup.array);
     let machine = Machine {
         errors: &setup.scenario.errors,
         seed: setup.scenario.run.seed,

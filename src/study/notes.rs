@@ -40,7 +40,7 @@ pub fn of(outcome: &Outcome) -> Vec<String> {
     if setup.scenario.run.method == MethodChoice::Auto {
         notes.push(format!(
             "Method \"{}\" was chosen automatically.",
-            setup.choice.method.name()
+            setup.choice.method().name()
         ));
     }
     notes

@@ -3,7 +3,7 @@
 
 use crate::array::Array;
 use crate::error::ScenarioError;
-use crate::farfield::choose::{Choice, MEMORY_LIMIT_BYTES, Refusal, Tilts, choose, prepare};
+use crate::farfield::choose::{Choice, MEMORY_LIMIT_BYTES, Refusal, Task, choose};
 use crate::farfield::{Grid, Map};
 use crate::figures::{Reader, Reading};
 use crate::perturb::TrialErrors;
@@ -26,8 +26,6 @@ pub struct Setup {
     pub grid: Grid,
     /// How the far field is computed.
     pub choice: Choice,
-    /// Tilts that the errors bring.
-    pub tilts: Tilts,
     /// Reads figures, with the array without errors as the reference.
     pub reader: Reader,
     /// Map of the array without errors.
@@ -44,23 +42,18 @@ impl Setup {
     /// bounds on figures that the array without errors does not have.
     pub fn new(scenario: Scenario) -> Result<Setup, ScenarioError> {
         let array = Array::new(&scenario)?;
-        let tilts = Tilts {
-            jitter_rad: scenario.errors.jitter_rad.rms(),
-            common_jitter_rad: scenario.errors.common_jitter_rad.rms(),
-        };
         let pixel_m = array.spot_m() / scenario.run.samples_per_spot;
         let (choice, reader, ideal_map, ideal) = match scenario.run.window {
             Window::Width { width_m } => {
-                without_errors(&scenario, &array, tilts, Grid::covering(width_m, pixel_m))?
+                without_errors(&scenario, &array, Grid::covering(width_m, pixel_m))?
             }
-            Window::Auto => automatic_window(&scenario, &array, tilts, pixel_m)?,
+            Window::Auto => automatic_window(&scenario, &array, pixel_m)?,
         };
         let setup = Setup {
             grid: ideal_map.grid,
             scenario,
             array,
             choice,
-            tilts,
             reader,
             ideal_map,
             ideal,
@@ -126,7 +119,6 @@ type WithoutErrors = (Choice, Reader, Map, Reading);
 fn without_errors(
     scenario: &Scenario,
     array: &Array,
-    tilts: Tilts,
     grid: Grid,
 ) -> Result<WithoutErrors, ScenarioError> {
     let refused = |refusal: Refusal| {
@@ -137,11 +129,13 @@ fn without_errors(
         };
         scenario.error(key, refusal.found, refusal.advice)
     };
-    let choice = choose(array, grid, tilts, scenario.run.method).map_err(refused)?;
-    let still = Tilts::default();
-    let quiet = choose(array, grid, still, scenario.run.method).map_err(refused)?;
+    let method = scenario.run.method;
+    let of_trials = Task::of_trials(grid, &scenario.errors);
+    let choice = choose(array, of_trials, method).map_err(refused)?;
+    let still = choose(array, Task::still(grid), method).map_err(refused)?;
     let mut map = Map::dark(grid);
-    prepare(&quiet, array, grid, still, 0.0)
+    still
+        .prepare(array)
         .worker()
         .irradiance(TrialErrors::none(&Errors::none()), &mut map);
     let mut reader = Reader::new(array, grid, scenario.target.bucket_diameter_m);
@@ -154,17 +148,16 @@ fn without_errors(
 fn automatic_window(
     scenario: &Scenario,
     array: &Array,
-    tilts: Tilts,
     pixel_m: f64,
 ) -> Result<WithoutErrors, ScenarioError> {
     let spot_m = array.spot_m();
     let bucket_m = scenario.target.bucket_diameter_m.unwrap_or(0.0);
-    let reach_m = 4.0 * array.range_m * tilts.common_jitter_rad + 4.0 * spot_m;
+    let reach_m = 4.0 * array.range_m * scenario.errors.common_jitter_rad.rms() + 4.0 * spot_m;
     let least_m = (16.0 * spot_m).max(2.0 * bucket_m).max(2.0 * reach_m);
     let most_m = MOST_AUTO_PIXELS as f64 * pixel_m;
     let mut width_m = least_m;
     loop {
-        let found = without_errors(scenario, array, tilts, Grid::covering(width_m, pixel_m))?;
+        let found = without_errors(scenario, array, Grid::covering(width_m, pixel_m))?;
         let circle_m = found.3.figures.get(Figure::Encircled80Diameter);
         match circle_m {
             Some(circle_m) => {
@@ -173,7 +166,7 @@ fn automatic_window(
                 if grid.pixels == found.2.grid.pixels {
                     return Ok(found);
                 }
-                return without_errors(scenario, array, tilts, grid);
+                return without_errors(scenario, array, grid);
             }
             None if width_m >= most_m * (1.0 - 1e-9) => return Ok(found),
             None => width_m = (2.0 * width_m).min(most_m),
