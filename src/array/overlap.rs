@@ -15,7 +15,9 @@ pub fn first_overlap(elements: &Elements, element: &Element) -> Option<(usize, u
     for n in 0..elements.len() {
         let (x, y) = (elements.x_m[n], elements.y_m[n]);
         let (column, row) = ((x / cell_m).floor() as i64, (y / cell_m).floor() as i64);
-        for key in (-1..=1).flat_map(|j| (-1..=1).map(move |i| (column + i, row + j))) {
+        for key in (-1..=1)
+            .flat_map(|j| (-1..=1).map(move |i| (column.saturating_add(i), row.saturating_add(j))))
+        {
             for &other in cells.get(&key).map_or(&[][..], Vec::as_slice) {
                 let (dx, dy) = (x - elements.x_m[other], y - elements.y_m[other]);
                 if elements_overlap(element.shape, element.size_m, dx, dy) {
