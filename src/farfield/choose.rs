@@ -156,11 +156,19 @@ impl Choice {
 /// # Errors
 /// The method asked for (or, with `Auto`, every method) exceeds the memory limit or does not apply.
 pub fn choose(array: &Array, task: Task, requested: MethodChoice) -> Result<Choice, Refusal> {
-    let pixels = task.grid.pixels as f64;
-    if 100.0 * pixels * pixels > MEMORY_LIMIT_BYTES {
+    /// Bytes that map, figures and pictures hold for each pixel.
+    const PIXEL_BYTES: f64 = 100.0;
+    let most = (MEMORY_LIMIT_BYTES / PIXEL_BYTES).sqrt().floor();
+    if task.grid.pixels as f64 > most {
+        let pixels = match task.grid.pixels {
+            pixels if pixels < 10_000_000 => pixels.to_string(),
+            pixels => format!("{:.0e}", pixels as f64),
+        };
         return Err(Refusal {
-            found: format!("a map of {0} × {0} pixels", task.grid.pixels),
-            advice: "use a smaller run.window or run.samples_per_spot".to_string(),
+            found: format!("a map of {pixels} × {pixels} pixels"),
+            advice: format!(
+                "at most {most} × {most} fit in memory: use a smaller run.window or run.samples_per_spot"
+            ),
         });
     }
     let elements = array.len();

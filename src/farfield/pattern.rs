@@ -199,6 +199,8 @@ pub fn clipping_loss(element: &Element) -> f64 {
 
 /// Nodes that a rule on [0, `reach_m`] needs for exp(−qs²) cos(as), a up to `largest`.
 fn nodes(reach_m: f64, q: Complex64, largest: f64) -> Vec<(f64, f64)> {
+    // Past e⁻³⁶ nothing is left that double precision would notice.
+    let reach_m = reach_m.min((36.0 / q.re).sqrt());
     let turns = 0.5 * largest * reach_m + q.norm() * reach_m * reach_m;
     gauss_legendre(16 + turns.ceil() as usize, 0.0, reach_m)
 }

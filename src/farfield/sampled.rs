@@ -36,6 +36,9 @@ pub fn cells_across_element(array: &Array, grid: Grid) -> f64 {
 /// Columns that one task of the second pass gathers.
 const COLUMNS: usize = 16;
 
+/// Grids longer than this are never transformed: they are foreseen, and refused.
+const LONGEST: usize = 100_000_000;
+
 /// Geometry of the painted grid, known before anything is allocated.
 #[derive(Debug, Clone, Copy, PartialEq)]
 pub struct SampledPlan {
@@ -62,9 +65,15 @@ impl SampledPlan {
         // n Δ = λ·range/pixel, whatever n.
         let span_m = array.wavelength_m * array.range_m / grid.pixel_m;
         let least = (span_m * cells / size_m * (1.0 - 1e-12)).ceil();
-        let length = good_length((least as usize).max(4 * grid.pixels));
+        let least = (least as usize).max(4 * grid.pixels);
+        // Fast lengths lie far apart up there, and no memory holds such a grid.
+        let length = if least < LONGEST {
+            good_length(least)
+        } else {
+            least
+        };
         let pitch_m = span_m / length as f64;
-        let rows = (array.envelope_diameter_m / pitch_m).ceil() as usize + 3;
+        let rows = ((array.envelope_diameter_m / pitch_m).ceil() as usize).saturating_add(3);
         let (half_x, half_y) = array.element.half_extent_m();
         let box_cells = (2.0 * half_x / pitch_m + 2.0) * (2.0 * half_y / pitch_m + 2.0);
         SampledPlan {
@@ -72,7 +81,7 @@ impl SampledPlan {
             pitch_m,
             rows,
             shared_bytes: array.len() as f64 * (8.0 * box_cells + 72.0),
-            worker_bytes: 16.0 * (rows as f64 * grid.pixels as f64)
+            worker_bytes: 16.0 * (rows as f64 * grid.pixels as f64 + length as f64)
                 + 8.0 * (grid.pixels as f64).powi(2)
                 + 73.0 * array.len() as f64,
         }

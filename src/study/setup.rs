@@ -7,7 +7,7 @@ use crate::farfield::choose::{Choice, MEMORY_LIMIT_BYTES, Refusal, Task, choose}
 use crate::farfield::{Grid, Map};
 use crate::figures::{Reader, Reading};
 use crate::perturb::TrialErrors;
-use crate::scenario::{Errors, Figure, Scenario, Window};
+use crate::scenario::{Errors, Figure, Layout, Scenario, Window};
 
 /// Most pixels a side that an automatic window takes for the 80 % circle.
 const MOST_AUTO_PIXELS: usize = 2047;
@@ -42,6 +42,7 @@ impl Setup {
     /// bounds on figures that the array without errors does not have.
     pub fn new(scenario: Scenario) -> Result<Setup, ScenarioError> {
         let array = Array::new(&scenario)?;
+        refuse_wild_tilts(&scenario, &array)?;
         let pixel_m = array.spot_m() / scenario.run.samples_per_spot;
         let (choice, reader, ideal_map, ideal) = match scenario.run.window {
             Window::Width { width_m } => {
@@ -111,6 +112,35 @@ impl Setup {
         }
         Ok(())
     }
+}
+
+/// Refuse tilts that throw the elements' beams so far off that nothing combines, and
+/// that would take sums of absurd length to say so.
+fn refuse_wild_tilts(scenario: &Scenario, array: &Array) -> Result<(), ScenarioError> {
+    let errors = &scenario.errors;
+    let size_m = array.element.size_m;
+    let beam_rad = array.wavelength_m / size_m;
+    let inside_rad = array.curvature_per_m.abs() * size_m / 2.0;
+    let steady = match scenario.array.layout {
+        Layout::Table { .. } => "array.table",
+        _ => "target.focus",
+    };
+    for (key, tilt_rad, most) in [
+        ("errors.jitter", errors.jitter_rad.rms(), 10.0),
+        ("errors.common_jitter", errors.common_jitter_rad.rms(), 100.0),
+        (steady, array.largest_tilt_rad(), 1000.0),
+        ("target.focus", inside_rad, 1000.0),
+    ] {
+        let beams = tilt_rad / beam_rad;
+        if beams > most * (1.0 + 1e-9) {
+            return Err(scenario.error(
+                key,
+                format!("tilts of {tilt_rad:.3e} rad, {beams:.3e} times the beam of one element"),
+                format!("at most {most} times λ/size = {beam_rad:.3e} rad can be computed"),
+            ));
+        }
+    }
+    Ok(())
 }
 
 type WithoutErrors = (Choice, Reader, Map, Reading);
