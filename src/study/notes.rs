@@ -6,6 +6,9 @@ use crate::scenario::{Figure, MethodChoice};
 /// The phase left out by the Fresnel integral above which a note warns, in radians.
 pub const PARAXIAL_LIMIT_RAD: f64 = 0.1;
 
+/// Why an array whose elements are all out has no such figure.
+const NO_LIGHT: &str = "there is no light";
+
 /// The notes of an outcome, most important first.
 pub fn of(outcome: &Outcome) -> Vec<String> {
     let setup = &outcome.setup;
@@ -59,13 +62,28 @@ fn undefined_note(outcome: &Outcome, figure: Figure) -> Option<String> {
             "the square of three widths (ISO 11146-1) reaches the window's edge"
         }
         Figure::SideLobeRatio => "no second maximum lies inside the window",
-        Figure::Offset => "there is no light",
+        Figure::Offset | Figure::CombiningEfficiency | Figure::WindowFraction => NO_LIGHT,
         _ => return None,
     };
     let trials = outcome.trials.trials.len();
+    // Strehl ratios that are undefined for want of a reference have their own note.
+    if figure == Figure::CombiningEfficiency && outcome.setup.ideal.figures.get(figure).is_none() {
+        return None;
+    }
+    let dark = outcome
+        .trials
+        .trials
+        .iter()
+        .filter(|trial| trial.figures.get(Figure::WindowFraction).is_none())
+        .count();
     let missing = trials - outcome.statistics[figure as usize].1.count;
     let ideal = outcome.setup.ideal.figures.get(figure).is_none();
     let long = outcome.long_exposure.figures.get(figure).is_none();
+    let reason = match dark {
+        0 => reason.to_string(),
+        _ if reason == NO_LIGHT || missing == dark && !ideal => NO_LIGHT.to_string(),
+        _ => format!("{reason}, or {NO_LIGHT}"),
+    };
     let mut cases = Vec::new();
     if ideal {
         cases.push("without errors".to_string());
