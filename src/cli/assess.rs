@@ -4,6 +4,7 @@ use super::folder::Folder;
 use super::options::StudyOptions;
 use super::progress::Bar;
 use super::{Stop, interrupt, terminal};
+use facula::error::ScenarioError;
 use facula::report::console;
 use facula::report::files::{self, File};
 use facula::report::summary::{RunInfo, of_assess};
@@ -21,7 +22,7 @@ pub fn run(options: &StudyOptions) -> Result<(), Stop> {
     if options.scenario.scenario.is_none() {
         terminal::remark("No scenario given: running the built-in demo (crater_relay.toml).");
     }
-    let table = carry_table(&scenario);
+    let table = carry_table(&scenario)?;
     let pool = options.scenario.pool()?;
     let bar = Bar::new(options.quiet);
     bar.stage("array without errors", 1);
@@ -54,7 +55,7 @@ pub fn run(options: &StudyOptions) -> Result<(), Stop> {
     folder.finish()?;
 
     if options.scenario.json {
-        terminal::print(&summary);
+        terminal::print(&summary)?;
     } else {
         let met = outcome.verdict.met != Some(false);
         let answer = console::answer(&outcome);
@@ -71,7 +72,7 @@ pub fn run(options: &StudyOptions) -> Result<(), Stop> {
             } else {
                 line.to_string()
             };
-            terminal::print(&(line + "\n"));
+            terminal::print(&(line + "\n"))?;
         }
     }
     if options.gate && outcome.verdict.met == Some(false) {
@@ -81,12 +82,21 @@ pub fn run(options: &StudyOptions) -> Result<(), Stop> {
 }
 
 /// The table that a scenario names, to be copied beside the results; the copy's name is its bare file name.
-fn carry_table(scenario: &Scenario) -> Option<File> {
+fn carry_table(scenario: &Scenario) -> Result<Option<File>, ScenarioError> {
     let Layout::Table { file } = &scenario.array.layout else {
-        return None;
+        return Ok(None);
     };
+    let name = file.file_name().unwrap_or_default().to_string_lossy();
+    if files::NAMES.contains(&name.as_ref()) {
+        return Err(scenario.error(
+            "array.table",
+            format!("found \"{name}\", which is also the name of a result"),
+            "the table is copied beside the results: rename it",
+        ));
+    }
     let path: PathBuf = scenario.source.folder.join(file);
     // A table that cannot be read is reported when the array is laid out.
-    let bytes = std::fs::read(path).ok()?;
-    Some((file.file_name()?.to_string_lossy().into_owned(), bytes))
+    Ok(std::fs::read(path)
+        .ok()
+        .map(|bytes| (name.into_owned(), bytes)))
 }

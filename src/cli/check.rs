@@ -19,9 +19,9 @@ pub fn run(options: &ScenarioOptions) -> Result<(), Stop> {
     if options.json {
         let mut facts = summary::array(&setup);
         facts["run"] = check::run_facts(&setup, threads, pace);
-        terminal::print(&format!("{facts:#}\n"));
+        terminal::print(&format!("{facts:#}\n"))?;
     } else {
-        terminal::print(&check::describe(&setup, threads, pace));
+        terminal::print(&check::describe(&setup, threads, pace))?;
     }
     Ok(())
 }

@@ -48,10 +48,7 @@ pub fn run() -> ExitCode {
     let done = match options.command {
         Command::Assess(options) => assess::run(&options),
         Command::Check(options) => check::run(&options),
-        Command::Starter => {
-            terminal::print(facula::scenario::STARTER);
-            Ok(())
-        }
+        Command::Starter => terminal::print(facula::scenario::STARTER).map_err(Stop::from),
     };
     let status = match done {
         Ok(()) => return ExitCode::SUCCESS,

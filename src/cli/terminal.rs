@@ -1,12 +1,19 @@
 //! Writing to the terminal. A reader that has gone away (a closed pipe) is no failure.
 
-use std::io::{IsTerminal, Write, stderr, stdout};
+use anyhow::{Context, Result};
+use std::io::{ErrorKind, IsTerminal, Write, stderr, stdout};
 
 /// Write to standard output.
-pub fn print(text: &str) {
-    // Nobody is left to be told when this fails.
-    let _ = stdout().write_all(text.as_bytes());
-    let _ = stdout().flush();
+pub fn print(text: &str) -> Result<()> {
+    let written = stdout()
+        .write_all(text.as_bytes())
+        .and_then(|()| stdout().flush());
+    match written {
+        Err(error) if error.kind() != ErrorKind::BrokenPipe => {
+            Err(error).context("standard output cannot be written")
+        }
+        _ => Ok(()),
+    }
 }
 
 /// Write a line to standard error.
@@ -14,9 +21,14 @@ pub fn remark(text: &str) {
     let _ = writeln!(stderr(), "{text}");
 }
 
-/// Write an error to standard error.
+/// Write an error to standard error: one line, whatever was typed.
 pub fn complain(text: &str) {
-    remark(&format!("facula: {text}"));
+    let line: String = text
+        .chars()
+        .take(2000)
+        .map(|letter| if letter.is_control() { ' ' } else { letter })
+        .collect();
+    remark(&format!("facula: {line}"));
 }
 
 /// A line for standard output in bold green or red where it shows colour:

@@ -1,6 +1,6 @@
 //! What `check` prints: what follows from a scenario, and what a run will take.
 
-use super::console::{per_cent, spoken_bound, wrap};
+use super::console::{one_line, per_cent, spoken_bound, wrap};
 use super::units::{readable, significant};
 use crate::farfield::pattern::clipping_loss;
 use crate::quantity::Kind;
@@ -47,7 +47,7 @@ pub fn run_facts(setup: &Setup, threads: usize, pace: f64) -> Value {
 pub fn describe(setup: &Setup, threads: usize, pace: f64) -> String {
     let (array, scenario) = (&setup.array, &setup.scenario);
     let length = |value: f64| readable(value, Kind::Length, 4);
-    let mut lines = vec![scenario.title.clone(), String::new()];
+    let mut lines = vec![one_line(&scenario.title), String::new()];
     let mut fact = |name: &str, text: String| lines.push(format!("{name:<22} {text}"));
     fact(
         "elements",

@@ -1,6 +1,6 @@
 //! What a study prints: the answer first, at most 100 columns wide.
 
-use super::units::{readable, significant, unit_for};
+use super::units::{fixed, readable, significant, unit_for};
 use crate::quantity::Kind;
 use crate::scenario::names::Named;
 use crate::scenario::{Bound, Comparison, Figure, Statistic};
@@ -123,7 +123,7 @@ pub fn answer(outcome: &Outcome) -> String {
 /// Everything that `assess` prints, the answer first.
 pub fn of_assess(outcome: &Outcome) -> String {
     let mut lines = vec![
-        outcome.setup.scenario.title.clone(),
+        one_line(&outcome.setup.scenario.title),
         String::new(),
         answer(outcome),
     ];
@@ -131,7 +131,11 @@ pub fn of_assess(outcome: &Outcome) -> String {
     lines.extend(limits(outcome));
     lines.push(String::new());
     lines.extend(
-        figure_table(outcome)
+        [4, 3, 2]
+            .map(|digits| figure_table(outcome, digits))
+            .iter()
+            .find(|table| table.lines().all(|line| line.chars().count() <= COLUMNS))
+            .unwrap_or(&figure_table(outcome, 2))
             .lines()
             .map(|line| line.trim_end().to_string()),
     );
@@ -219,8 +223,8 @@ fn limits(outcome: &Outcome) -> Vec<String> {
     )]
 }
 
-/// The figures, a row each, in the unit that suits the row.
-fn figure_table(outcome: &Outcome) -> Table {
+/// The figures, a row each, in the unit that suits the row, to so many digits.
+fn figure_table(outcome: &Outcome, digits: usize) -> String {
     let mut table = Table::new();
     table.load_style(TableStyle::new().header_separator(LineStyle::none().fill('─').junction('─')));
     table.set_header([
@@ -245,15 +249,12 @@ fn figure_table(outcome: &Outcome) -> Table {
         let unit = unit_for(largest, figure.kind());
         let number = |value: Option<f64>| {
             value.map_or("–".to_string(), |value| {
-                significant(value / unit.factor, 4)
+                significant(value / unit.factor, digits)
             })
         };
         let mean = match (summary.mean, summary.standard_error) {
             (Some(mean), Some(error)) if error > 0.0 => {
-                let (mean, error) = (mean / unit.factor, error / unit.factor);
-                // Two digits of the error decide how many decimals the mean deserves.
-                let decimals = (1.0 - error.log10().floor()).clamp(0.0, 9.0) as usize;
-                format!("{mean:.decimals$} ± {error:.decimals$}")
+                mean_and_error(mean / unit.factor, error / unit.factor, digits)
             }
             (mean, _) => number(mean),
         };
@@ -278,7 +279,18 @@ fn figure_table(outcome: &Outcome) -> Table {
         first.set_constraint(ColumnConstraint::LowerBoundary(Width::Fixed(30)));
     }
     table.set_width(COLUMNS as u16);
-    table
+    table.to_string()
+}
+
+/// `0.9328 ± 0.0015`: two digits of the error decide how many decimals the mean deserves.
+fn mean_and_error(mean: f64, error: f64, digits: usize) -> String {
+    let decimals = 1.0 - error.log10().floor();
+    if mean.abs() < 1e6 && decimals <= 9.0 {
+        let decimals = decimals.max(0.0) as usize;
+        format!("{} ± {}", fixed(mean, decimals), fixed(error, decimals))
+    } else {
+        format!("{} ± {}", significant(mean, digits), significant(error, 2))
+    }
 }
 
 /// What was computed, in three lines.
@@ -321,6 +333,20 @@ fn setting(outcome: &Outcome) -> Vec<String> {
     ]
 }
 
+/// A title as a terminal can take it: one line, no control characters, not without end.
+pub fn one_line(title: &str) -> String {
+    const MOST: usize = 300;
+    let mut shown: String = title
+        .chars()
+        .take(MOST)
+        .map(|letter| if letter.is_control() { ' ' } else { letter })
+        .collect();
+    if title.chars().nth(MOST).is_some() {
+        shown.push('…');
+    }
+    shown
+}
+
 /// Break a line of prose at spaces; lines of a table are short enough already.
 pub fn wrap(line: &str) -> Vec<String> {
     let width = |text: &str| text.chars().count();
@@ -339,5 +365,15 @@ pub fn wrap(line: &str) -> Vec<String> {
             lines.push(format!("  {word}"));
         }
     }
+    // A word without a space to break at is cut.
     lines
+        .iter()
+        .flat_map(|line| {
+            let letters: Vec<char> = line.chars().collect();
+            letters
+                .chunks(COLUMNS)
+                .map(String::from_iter)
+                .collect::<Vec<_>>()
+        })
+        .collect()
 }

@@ -13,6 +13,22 @@ use rayon::prelude::*;
 /// A file to be written: its name and its bytes.
 pub type File = (String, Vec<u8>);
 
+/// Names of all results: no table copied beside them may bear one.
+pub const NAMES: [&str; 12] = [
+    "summary.json",
+    "scenario.toml",
+    "trials.csv",
+    "encircled.csv",
+    "lobes.csv",
+    "maps.npz",
+    "map_ideal.png",
+    "map_one_trial.png",
+    "map_long_exposure.png",
+    "aperture.png",
+    "encircled.png",
+    "strehl.png",
+];
+
 /// Draws one picture of an outcome.
 type Painter = fn(&Outcome) -> Vec<u8>;
 
