@@ -25,7 +25,14 @@ impl Folder {
     /// Begin beside `target`, after checking that it may be replaced.
     pub fn begin(target: &Path) -> Result<Folder> {
         let target = std::path::absolute(target)
+            .and_then(follow)
             .with_context(|| format!("\"{}\" is no place for results", target.display()))?;
+        if std::env::current_dir().is_ok_and(|here| here.starts_with(&target)) {
+            bail!(
+                "\"{}\" is no place for results while you stand in it: name a folder below it with --out",
+                target.display()
+            );
+        }
         let (Some(parent), Some(name)) = (target.parent(), target.file_name()) else {
             bail!(
                 "\"{}\" is no place for results: name a folder with --out",
@@ -92,6 +99,15 @@ impl Drop for Folder {
         if interrupt::partial().take().is_some() {
             discard(&self.partial);
         }
+    }
+}
+
+/// What a link leads to, so that the link itself is not replaced; else the path as it is.
+fn follow(path: PathBuf) -> std::io::Result<PathBuf> {
+    if fs::symlink_metadata(&path).is_ok_and(|found| found.is_symlink()) {
+        fs::canonicalize(path)
+    } else {
+        Ok(path)
     }
 }
 
