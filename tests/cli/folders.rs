@@ -49,6 +49,7 @@ fn places_that_take_no_results_are_refused_in_one_line() {
         ("file", &["is a file"][..]),
         ("file/below", &["file"]),
         ("..", &["no place for results"]),
+        (".", &["no place for results"]),
         ("/", &["no place for results"]),
     ] {
         desk.refused(1, &["assess", "small.toml", "--out", out], parts);
@@ -99,7 +100,7 @@ fn results_that_stepped_aside_are_put_back_by_the_next_run() {
     let earlier = desk.read("o/trials.csv");
     fs::rename(desk.at("o"), desk.at(".o.previous")).expect("a rename");
     // This run fails before it has anything to put in place.
-    let done = interrupted(&desk, &["assess", "small.toml", "--out", "o"]);
+    let done = interrupted(&desk, "INT");
     assert_eq!(done.status, 1);
     assert!(earlier == desk.read("o/trials.csv"));
 }
@@ -110,20 +111,22 @@ fn an_interrupted_run_leaves_the_earlier_results_untouched() {
     let desk = Desk::new();
     desk.good(&["assess", "small.toml", "--out", "o"]);
     let earlier = desk.read("o/summary.json");
-    let done = interrupted(&desk, &["assess", "small.toml", "--out", "o"]);
-    assert_eq!(done.status, 1, "{done:?}");
-    assert_eq!(done.out, "");
-    assert_eq!(done.err.lines().count(), 1, "{}", done.err);
-    assert!(done.err.contains("interrupted"), "{}", done.err);
-    assert_eq!(names(&desk.at(".")), ["o", "small.toml"]);
-    assert!(earlier == desk.read("o/summary.json"));
+    for signal in ["INT", "TERM"] {
+        let done = interrupted(&desk, signal);
+        assert_eq!(done.status, 1, "{signal}: {done:?}");
+        assert_eq!(done.out, "", "{signal}");
+        assert_eq!(done.err.lines().count(), 1, "{signal}: {}", done.err);
+        assert!(done.err.contains("interrupted"), "{signal}: {}", done.err);
+        assert_eq!(names(&desk.at(".")), ["o", "small.toml"], "{signal}");
+        assert!(earlier == desk.read("o/summary.json"), "{signal}");
+    }
 }
 
-/// Start a long run, interrupt it once it is under way, and expect its end within a second.
+/// Start a long run into `o`, send it a signal once it is under way, and expect its end within a second.
 #[cfg(unix)]
-fn interrupted(desk: &Desk, words: &[&str]) -> super::run::Done {
+fn interrupted(desk: &Desk, signal: &str) -> super::run::Done {
     use std::time::{Duration, Instant};
-    let child = desk.start(&[words, &["--trials", "1000000"]].concat());
+    let child = desk.start(&["assess", "small.toml", "--out", "o", "--trials", "1000000"]);
     let partial = desk.at(&format!(".o.partial-{}", child.id()));
     let begun = Instant::now();
     while !partial.join(".lock").exists() {
@@ -132,11 +135,32 @@ fn interrupted(desk: &Desk, words: &[&str]) -> super::run::Done {
     }
     std::thread::sleep(Duration::from_millis(200));
     let kill = std::process::Command::new("kill")
-        .args(["-INT", &child.id().to_string()])
+        .args([&format!("-{signal}"), &child.id().to_string()])
         .status();
     assert!(kill.expect("kill").success());
     let sent = Instant::now();
     let done = super::run::ended(child);
     assert!(sent.elapsed() < Duration::from_secs(1));
     done
+}
+
+#[cfg(unix)]
+#[test]
+fn a_link_is_followed_and_stays() {
+    let desk = Desk::new();
+    fs::create_dir(desk.at("real")).expect("a folder");
+    let link =
+        |to: &str, name: &str| std::os::unix::fs::symlink(to, desk.at(name)).expect("a link");
+    link("real", "link");
+    link("nowhere", "astray");
+    for _ in 0..2 {
+        desk.good(&["assess", "small.toml", "--out", "link"]);
+        assert!(desk.at("link").is_symlink());
+        assert!(desk.at("real/summary.json").exists());
+    }
+    desk.refused(
+        1,
+        &["assess", "small.toml", "--out", "astray"],
+        &["no place for results"],
+    );
 }
