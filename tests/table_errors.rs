@@ -244,6 +244,13 @@ fn arrays_that_cannot_be_computed_are_refused_with_line_and_key() {
             "pixels",
         ),
         (
+            "size = \"10 cm\"",
+            "size = \"10 cm\"\nprofile = \"gaussian\"\nbeam_radius = \"1 mm\"\nobscuration = 0.5",
+            11,
+            "array.element.beam_radius",
+            "passes the element",
+        ),
+        (
             "piston = \"10 nm\"",
             "jitter = \"1 rad\"",
             13,

@@ -4,6 +4,7 @@
 use crate::array::Array;
 use crate::error::ScenarioError;
 use crate::farfield::choose::{Choice, MEMORY_LIMIT_BYTES, Refusal, Task, choose};
+use crate::farfield::pattern::clipping_loss;
 use crate::farfield::{Grid, Map};
 use crate::figures::{Reader, Reading};
 use crate::perturb::TrialErrors;
@@ -11,6 +12,9 @@ use crate::scenario::{Errors, Figure, Layout, Scenario, Window};
 
 /// Most pixels a side that an automatic window takes for the 80 % circle.
 const MOST_AUTO_PIXELS: usize = 2047;
+
+/// Least share of a beam that an element must let through: less is lost in rounding.
+const LEAST_PASSED: f64 = 1e-9;
 
 /// Room around the 80 % circle without errors, so that errors may widen it.
 const ROOM_AROUND_CIRCLE: f64 = 1.25;
@@ -43,6 +47,13 @@ impl Setup {
     pub fn new(scenario: Scenario) -> Result<Setup, ScenarioError> {
         let array = Array::new(&scenario)?;
         refuse_wild_tilts(&scenario, &array)?;
+        if clipping_loss(&array.element) > 1.0 - LEAST_PASSED {
+            return Err(scenario.error(
+                "array.element.beam_radius",
+                "next to nothing of the beam passes the element",
+                "make the beam wider, or the obscuration smaller",
+            ));
+        }
         let pixel_m = array.spot_m() / scenario.run.samples_per_spot;
         let (choice, reader, ideal_map, ideal) = match scenario.run.window {
             Window::Width { width_m } => {
