@@ -5,16 +5,13 @@ use std::fs;
 use std::path::{Path, PathBuf};
 
 /// What may stand at the top of the repository.
-const TOP: [&str; 16] = [
+const TOP: [&str; 13] = [
     ".ci",
     ".git",
-    ".github",
     ".gitignore",
     "Cargo.lock",
     "Cargo.toml",
     "DEVELOPERS.md",
-    "LICENSE-APACHE",
-    "LICENSE-MIT",
     "README.md",
     "benches",
     "configs",
