@@ -1,0 +1,304 @@
+//! `sampled` against `direct` over whole maps, for every layout, shape, profile and error.
+//!
+//! The tolerance of 2e-3 of the map's own peak is the error that the sampled method is designed
+//! for; each test prints the worst that it found.
+
+mod common;
+
+use common::{array_of, assert_close, direct, map, sampled, scenario_in, text};
+use facula::array::Array;
+use facula::farfield::choose::Tilts;
+use facula::farfield::{Grid, Map};
+use facula::perturb::Draw;
+use facula::scenario::Errors;
+use rayon::prelude::*;
+use std::path::Path;
+
+/// λ/size of every element here, in rad; it is 0.1 m across.
+const BEAM_RAD: f64 = 1e-5;
+
+/// Layouts of a few elements, with pitch for the shape; the table is irregular.
+const LAYOUTS: [(&str, &str); 11] = [
+    (
+        "two",
+        "layout = \"square\"\nrows = 1\ncolumns = 2\npitch = \"0.13 m\"",
+    ),
+    ("block", "layout = \"square\"\nrows = 3\ncolumns = 4"),
+    ("seven", "layout = \"hexagonal\"\nrings = 1"),
+    (
+        "nineteen",
+        "layout = \"hexagonal\"\nrings = 2\npitch = \"0.121 m\"",
+    ),
+    (
+        "disc with a hole",
+        "layout = \"square\"\noutline = \"circle\"\nacross = \"0.6 m\"\nhole = \"0.2 m\"",
+    ),
+    (
+        "disc about a gap",
+        "layout = \"hexagonal\"\noutline = \"circle\"\nacross = \"0.55 m\"\norigin = \"gap\"\nkeep = \"centre\"",
+    ),
+    (
+        "square about a gap",
+        "layout = \"square\"\noutline = \"square\"\nacross = \"0.5 m\"\norigin = \"gap\"\ntaper = \"6 dB\"",
+    ),
+    (
+        "hexagon with a hole",
+        "layout = \"hexagonal\"\noutline = \"hexagon\"\nacross = \"0.6 m\"\nhole = \"0.15 m\"",
+    ),
+    (
+        "one in a square outline",
+        "layout = \"hexagonal\"\noutline = \"square\"\nacross = \"0.16 m\"",
+    ),
+    (
+        "rings",
+        "layout = \"rings\"\nrings = [1, 5, 9]\npitch = \"0.163 m\"",
+    ),
+    ("table", "layout = \"table\"\ntable = \"positions.csv\""),
+];
+
+const TABLE: &str = "x_m,y_m,power,phase_rad,tilt_x_rad,tilt_y_rad\n\
+    -0.171,0.083,1.0,0.0,0,0\n0.0437,0.1911,0.4,1.3,2e-6,0\n0.2213,-0.0127,1.7,-0.4,0,-3e-6\n\
+    -0.0531,-0.1609,0.9,0.2,1e-6,1e-6\n0.1171,-0.2287,1.2,2.1,0,0\n";
+
+const ALL_ERRORS: &str = "piston = \"0.6 rad\"\ndropout = 0.15\npower_spread = 0.3\n";
+
+struct Case<'a> {
+    layout: &'a str,
+    element: String,
+    target: &'a str,
+    errors: String,
+    samples: f64,
+}
+
+fn prepared(folder: &Path, case: &Case<'_>) -> (Array, Errors, Grid, Tilts) {
+    let scenario = scenario_in(
+        folder,
+        &text(
+            case.layout,
+            &case.element,
+            &format!("{}\n[errors]\n{}", case.target, case.errors),
+        ),
+    );
+    let array = array_of(&scenario);
+    let tilts = Tilts {
+        jitter_rad: scenario.errors.jitter_rad.rms(),
+        common_jitter_rad: scenario.errors.common_jitter_rad.rms(),
+    };
+    let spot_m = array.spot_m();
+    // The window of 16 spots, and never less than the element's own main lobe.
+    let width_m = (16.0 * spot_m).max(2.4 * BEAM_RAD * array.range_m);
+    let grid = Grid::covering(width_m, spot_m / case.samples);
+    (array, scenario.errors, grid, tilts)
+}
+
+/// Largest difference over the peak of the first map.
+fn worst(exact: &Map, other: &Map) -> f64 {
+    let peak = exact
+        .irradiance_w_m2
+        .iter()
+        .fold(0.0, |a: f64, &b| a.max(b));
+    exact
+        .irradiance_w_m2
+        .iter()
+        .zip(&other.irradiance_w_m2)
+        .map(|(a, b)| (a - b).abs() / peak)
+        .fold(0.0, f64::max)
+}
+
+/// Worst difference between the methods over `draws` trials.
+fn disagreement(folder: &Path, case: &Case<'_>, draws: u64) -> f64 {
+    let (array, errors, grid, tilts) = prepared(folder, case);
+    let (exact, painted) = (
+        direct(&array, grid, tilts),
+        sampled(&array, grid, tilts, 1.0),
+    );
+    (0..draws)
+        .map(|trial| {
+            let draw = Draw::of_trial(&array, &errors, 9, trial);
+            worst(&map(&exact, &draw), &map(&painted, &draw))
+        })
+        .fold(0.0, f64::max)
+}
+
+fn element(shape: &str, more: &str) -> String {
+    format!("shape = \"{shape}\"\nsize = \"0.1 m\"\n{more}")
+}
+
+fn folder_with_table() -> tempfile::TempDir {
+    let folder = tempfile::tempdir().unwrap_or_else(|error| panic!("{error}"));
+    std::fs::write(folder.path().join("positions.csv"), TABLE)
+        .unwrap_or_else(|error| panic!("{error}"));
+    folder
+}
+
+/// Check every case in parallel, and print them by their error.
+fn check_all(cases: &[(String, Case<'_>)], draws: u64, tolerance: f64, reason: &str) {
+    let folder = folder_with_table();
+    let mut found: Vec<(f64, &str)> = cases
+        .par_iter()
+        .map(|(name, case)| (disagreement(folder.path(), case, draws), name.as_str()))
+        .collect();
+    found.sort_by(|a, b| b.0.total_cmp(&a.0));
+    for (error, name) in &found {
+        println!("{error:.2e} {name}");
+    }
+    assert_close(found[0].1, found[0].0, 0.0, tolerance, reason);
+}
+
+const DESIGNED: &str = "the error that the sampled method is designed for";
+
+fn every_layout(shape: &str) {
+    let mut cases = Vec::new();
+    for (name, layout) in LAYOUTS {
+        for (profile, more) in [
+            ("uniform", ""),
+            (
+                "gaussian",
+                "profile = \"gaussian\"\nbeam_radius = \"0.047 m\"",
+            ),
+        ] {
+            for (kind, errors) in [
+                ("without errors", String::new()),
+                (
+                    "all errors",
+                    format!(
+                        "{ALL_ERRORS}jitter = \"{:e} rad\"\ncommon_jitter = \"{:e} rad\"",
+                        0.1 * BEAM_RAD,
+                        0.05 * BEAM_RAD
+                    ),
+                ),
+                (
+                    "half a beam of jitter",
+                    format!(
+                        "{ALL_ERRORS}dropped = \"unlocked\"\njitter = \"{:e} rad\"",
+                        0.5 * BEAM_RAD
+                    ),
+                ),
+            ] {
+                // Hexagons on a square lattice, and squares on a hexagonal one, stand apart.
+                if (shape, name) == ("hexagon", "two") || (shape, name) == ("square", "nineteen") {
+                    continue;
+                }
+                cases.push((
+                    format!("{name}, {shape}, {profile}, {kind}"),
+                    Case {
+                        layout,
+                        element: element(shape, more),
+                        target: "",
+                        errors,
+                        samples: if shape == "hexagon" { 2.0 } else { 2.6 },
+                    },
+                ));
+            }
+        }
+    }
+    // The direct sum over a hexagon's Gaussian takes hundreds of terms a direction.
+    check_all(
+        &cases,
+        if shape == "hexagon" { 1 } else { 3 },
+        2e-3,
+        DESIGNED,
+    );
+}
+
+#[test]
+fn sampled_circles_agree_with_the_direct_sum_in_every_layout() {
+    every_layout("circle");
+}
+
+#[test]
+fn sampled_squares_agree_with_the_direct_sum_in_every_layout() {
+    every_layout("square");
+}
+
+#[test]
+fn sampled_hexagons_agree_with_the_direct_sum_in_every_layout() {
+    every_layout("hexagon");
+}
+
+#[test]
+fn sampled_agrees_with_the_direct_sum_with_obscurations_facets_and_focus_errors() {
+    let mut cases = Vec::new();
+    for shape in ["circle", "square", "hexagon"] {
+        for (name, more) in [
+            ("uniform", ""),
+            ("obscured", "obscuration = 0.35"),
+            (
+                "gaussian, obscured",
+                "obscuration = 0.2\nprofile = \"gaussian\"\nbeam_radius = \"0.05 m\"",
+            ),
+        ] {
+            for target in [
+                "facets = \"flat\"",
+                "focus = \"1100 m\"",
+                "focus = \"900 m\"\nfacets = \"flat\"",
+                "focus = \"infinity\"",
+            ] {
+                for errors in [
+                    "",
+                    "piston = \"0.6 rad\"\njitter = \"2 urad\"\ncommon_jitter = \"1 urad\"",
+                ] {
+                    cases.push((
+                        format!("{shape}, {name}, {target:?}, {errors:?}"),
+                        Case {
+                            layout: LAYOUTS[2].1,
+                            element: element(shape, more),
+                            target,
+                            errors: errors.to_string(),
+                            samples: 2.0,
+                        },
+                    ));
+                }
+            }
+        }
+    }
+    check_all(&cases, 1, 2e-3, DESIGNED);
+}
+
+/// Counts of samples that fold the grating orders of a lattice onto the map's edges.
+#[test]
+fn sampled_agrees_with_the_direct_sum_at_commensurate_samplings() {
+    let mut cases = Vec::new();
+    for (rows, columns) in [(1, 1), (1, 2), (2, 2), (4, 4), (1, 8)] {
+        let layout = format!("layout = \"square\"\nrows = {rows}\ncolumns = {columns}");
+        let layout: &'static str = layout.leak();
+        for samples in [2.0, 4.0, 2.0 * 2f64.sqrt(), 5.0] {
+            cases.push((
+                format!("{rows} × {columns}, {samples}"),
+                Case {
+                    layout,
+                    element: element("square", ""),
+                    target: "",
+                    errors: String::new(),
+                    samples,
+                },
+            ));
+        }
+    }
+    check_all(&cases, 1, 2e-3, DESIGNED);
+}
+
+/// Aliases come from λ/Δ and farther: half the pitch leaves less of them.
+#[test]
+fn a_grid_twice_as_fine_comes_closer_to_the_direct_sum() {
+    let folder = folder_with_table();
+    for shape in ["circle", "square", "hexagon"] {
+        for (name, layout) in [LAYOUTS[2], LAYOUTS[10]] {
+            let case = Case {
+                layout,
+                element: element(shape, ""),
+                target: "",
+                errors: format!("{ALL_ERRORS}jitter = \"1 urad\""),
+                samples: 2.6,
+            };
+            let (array, errors, grid, tilts) = prepared(folder.path(), &case);
+            let draw = Draw::of_trial(&array, &errors, 1, 0);
+            let exact = map(&direct(&array, grid, tilts), &draw);
+            let [usual, fine, finest] = [1.0, 2.0, 4.0]
+                .map(|finer| worst(&exact, &map(&sampled(&array, grid, tilts, finer), &draw)));
+            println!("{shape}, {name}: {usual:.2e} {fine:.2e} {finest:.2e}");
+            assert!(fine < 0.7 * usual, "{shape}, {name}: {usual} → {fine}");
+            assert!(finest < 0.7 * fine, "{shape}, {name}: {fine} → {finest}");
+        }
+    }
+}
