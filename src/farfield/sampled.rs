@@ -6,10 +6,11 @@
 //! length n rather than 2n.
 //!
 //! Cells hold the mean of the element's field over the cell (covered area at the
-//! edges), and the tilt's phase at the cell's centre. The cell mean multiplies the
-//! transform by sinc(θΔ/λ) per axis, which is divided out; an element's tilt δ moves
-//! that factor to θ − δ, which dividing its amplitude by sinc(δΔ/λ) makes right at
-//! the aim point. What is left is aliasing, weighted by θΔ/λ.
+//! edges). The mean multiplies the transform by sinc(θΔ/λ) per axis, which is divided
+//! out. That holds for a tilted element too when its cells hold the mean of the tilted
+//! field: sinc(δΔ/λ) times the tilt's phase where the cell's light has its middle, which an
+//! edge or a sloping profile moves from the cell's centre. What is left is aliasing,
+//! weighted by θΔ/λ.
 
 use super::fft::good_length;
 use super::map::{Grid, Map};
@@ -56,12 +57,12 @@ pub struct SampledPlan {
 
 impl SampledPlan {
     /// Plan for a map, `cells` across an element at least, with tilts of up to
-    /// `largest_tilt_rad`, over which no more than 0.8 rad may pass in a cell.
+    /// `largest_tilt_rad`, over which no more than 0.6 rad may pass in a cell.
     pub fn new(array: &Array, grid: Grid, cells: f64, largest_tilt_rad: f64) -> SampledPlan {
         let size_m = array.element.size_m;
         let inside = array.curvature_per_m.abs() * size_m / 2.0;
         let turns = array.wavenumber() * (largest_tilt_rad + inside) * size_m;
-        let cells = cells.max(turns / 0.8);
+        let cells = cells.max(turns / 0.6);
         // n Δ = λ·range/pixel, whatever n.
         let span_m = array.wavelength_m * array.range_m / grid.pixel_m;
         let least = (span_m * cells / size_m * (1.0 - 1e-12)).ceil();
@@ -80,7 +81,8 @@ impl SampledPlan {
             length,
             pitch_m,
             rows,
-            shared_bytes: array.len() as f64 * (8.0 * box_cells + 72.0),
+            // The edge crosses about four cells for each cell across.
+            shared_bytes: array.len() as f64 * (8.0 * box_cells + 64.0 * size_m / pitch_m + 96.0),
             worker_bytes: 16.0 * (rows as f64 * grid.pixels as f64 + length as f64)
                 + 8.0 * (grid.pixels as f64).powi(2)
                 + 73.0 * array.len() as f64,
@@ -95,6 +97,8 @@ pub struct Sampled<'a> {
     grid: Grid,
     plan: SampledPlan,
     cells: Cells,
+    /// q of the factor exp(−q|s|²) on the field of an element.
+    exponent_per_m2: Complex64,
     fft: Arc<dyn Fft<f64>>,
     /// 1/sinc(θΔ/λ) along one axis of the map.
     deconvolution: Vec<f64>,
@@ -127,6 +131,7 @@ impl<'a> Sampled<'a> {
             grid,
             plan,
             cells: paint(array, &elements, plan.pitch_m, wavefront),
+            exponent_per_m2: wavefront.exponent_per_m2(&array.element, array.wavenumber()),
             elements,
             fft: FftPlanner::new().plan_fft_forward(plan.length),
             deconvolution: grid
@@ -205,7 +210,7 @@ impl SampledWorker<'_> {
             let smear = sinc(turn * tilt_x_rad) * sinc(turn * tilt_y_rad);
             *excitation = Excitation {
                 phasor: Complex64::from_polar(
-                    elements.amplitude[n] * draw.amplitude[n] / smear,
+                    elements.amplitude[n] * draw.amplitude[n] * smear,
                     elements.phase_rad[n] + draw.phase_rad[n] + array.wavenumber() * lift,
                 ),
                 tilt_x_rad,
@@ -232,11 +237,27 @@ impl SampledWorker<'_> {
             let y = row as f64 * pitch - elements.y_m[n];
             let mut phasor = excitation.phasor * Complex64::cis(k * (tilt_x * x + tilt_y * y));
             let step = Complex64::cis(k * tilt_x * pitch);
+            // A field exp(−q|s|²) leans towards one side of its cell, by −q s Δ²/6.
+            let lean = Complex64::new(0.0, -k * pitch * pitch / 6.0) * sampled.exponent_per_m2;
+            let mut leaning = 1.0 + lean * (tilt_x * x + tilt_y * y);
+            let leaning_step = lean * tilt_x * pitch;
+            let mut edges = strip.edges.iter();
+            let mut edge = edges.next();
             for (offset, cell) in strip.cells.iter().enumerate() {
                 let column = (strip.first_column + offset as i64).rem_euclid(length);
-                line[column as usize] +=
-                    phasor * Complex64::new(f64::from(cell.re), f64::from(cell.im));
+                let mut value = phasor * Complex64::new(f64::from(cell.re), f64::from(cell.im));
+                if let Some(crossed) = edge
+                    && crossed.column as usize == offset
+                {
+                    let turn =
+                        k * (tilt_x * f64::from(crossed.x_m) + tilt_y * f64::from(crossed.y_m));
+                    // exp(i·turn), a fraction of a radian.
+                    value *= Complex64::new(1.0 - turn * turn / 2.0, turn);
+                    edge = edges.next();
+                }
+                line[column as usize] += value * leaning;
                 phasor *= step;
+                leaning += leaning_step;
             }
         }
     }
