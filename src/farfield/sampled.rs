@@ -28,10 +28,17 @@ use std::sync::Arc;
 /// Grid cells across an element, at least.
 ///
 /// An alias reaches the map with the element's pattern out at λ/Δ, so a map that shows
-/// the element's own side lobes needs a finer grid, and one four times as wide as itself.
+/// the element's own side lobes needs a finer grid, and so does one to whose edges a focus
+/// or a table points the elements.
 pub fn cells_across_element(array: &Array, grid: Grid) -> f64 {
-    let nulls = grid.width_m() / 2.0 / array.range_m * array.element.size_m / array.wavelength_m;
-    if nulls <= 1.0 { 16.0 } else { 24.0 }
+    let beam_rad = array.wavelength_m / array.element.size_m;
+    let nulls = grid.width_m() / 2.0 / array.range_m / beam_rad;
+    let aside = array.largest_tilt_rad() / beam_rad;
+    if nulls <= 1.0 && aside <= 0.5 {
+        16.0
+    } else {
+        24.0
+    }
 }
 
 /// Columns that one task of the second pass gathers.
