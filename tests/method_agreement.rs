@@ -68,6 +68,7 @@ struct Case<'a> {
     target: &'a str,
     errors: String,
     samples: f64,
+    narrow: bool,
 }
 
 fn prepared(folder: &Path, case: &Case<'_>) -> (Array, Errors, Grid, Tilts) {
@@ -85,8 +86,14 @@ fn prepared(folder: &Path, case: &Case<'_>) -> (Array, Errors, Grid, Tilts) {
         common_jitter_rad: scenario.errors.common_jitter_rad.rms(),
     };
     let spot_m = array.spot_m();
-    // The window of 16 spots, and never less than the element's own main lobe.
-    let width_m = (16.0 * spot_m).max(2.4 * BEAM_RAD * array.range_m);
+    // The window of 16 spots, and never less than the element's own main lobe; or just less
+    // than that lobe, where the sampled method takes its coarsest grid.
+    let beam_m = BEAM_RAD * array.range_m;
+    let width_m = if case.narrow {
+        1.95 * beam_m
+    } else {
+        (16.0 * spot_m).max(2.4 * beam_m)
+    };
     let grid = Grid::covering(width_m, spot_m / case.samples);
     (array, scenario.errors, grid, tilts)
 }
@@ -147,7 +154,7 @@ fn check_all(cases: &[(String, Case<'_>)], draws: u64, tolerance: f64, reason: &
 
 const DESIGNED: &str = "the error that the sampled method is designed for";
 
-fn every_layout(shape: &str) {
+fn every_layout(shape: &str, tolerance: f64, reason: &str) {
     let mut cases = Vec::new();
     for (name, layout) in LAYOUTS {
         for (profile, more) in [
@@ -163,7 +170,7 @@ fn every_layout(shape: &str) {
                     "all errors",
                     format!(
                         "{ALL_ERRORS}jitter = \"{:e} rad\"\ncommon_jitter = \"{:e} rad\"",
-                        0.1 * BEAM_RAD,
+                        0.2 * BEAM_RAD,
                         0.05 * BEAM_RAD
                     ),
                 ),
@@ -175,20 +182,19 @@ fn every_layout(shape: &str) {
                     ),
                 ),
             ] {
-                // Hexagons on a square lattice, and squares on a hexagonal one, stand apart.
-                if (shape, name) == ("hexagon", "two") || (shape, name) == ("square", "nineteen") {
-                    continue;
+                for narrow in [false, true] {
+                    cases.push((
+                        format!("{name}, {shape}, {profile}, {kind}, narrow {narrow}"),
+                        Case {
+                            layout,
+                            element: element(shape, more),
+                            target: "",
+                            errors: errors.clone(),
+                            samples: if shape == "hexagon" { 2.0 } else { 2.6 },
+                            narrow,
+                        },
+                    ));
                 }
-                cases.push((
-                    format!("{name}, {shape}, {profile}, {kind}"),
-                    Case {
-                        layout,
-                        element: element(shape, more),
-                        target: "",
-                        errors,
-                        samples: if shape == "hexagon" { 2.0 } else { 2.6 },
-                    },
-                ));
             }
         }
     }
@@ -196,24 +202,25 @@ fn every_layout(shape: &str) {
     check_all(
         &cases,
         if shape == "hexagon" { 1 } else { 3 },
-        2e-3,
-        DESIGNED,
+        tolerance,
+        reason,
     );
 }
 
 #[test]
 fn sampled_circles_agree_with_the_direct_sum_in_every_layout() {
-    every_layout("circle");
+    every_layout("circle", 1e-3, "measured up to 4e-4");
 }
 
 #[test]
 fn sampled_squares_agree_with_the_direct_sum_in_every_layout() {
-    every_layout("square");
+    // Straight edges along the grid add their aliases up: measured up to 1.8e-3.
+    every_layout("square", 2e-3, DESIGNED);
 }
 
 #[test]
 fn sampled_hexagons_agree_with_the_direct_sum_in_every_layout() {
-    every_layout("hexagon");
+    every_layout("hexagon", 1e-3, "measured up to 5e-4");
 }
 
 #[test]
@@ -234,18 +241,23 @@ fn sampled_agrees_with_the_direct_sum_with_obscurations_facets_and_focus_errors(
                 "focus = \"900 m\"\nfacets = \"flat\"",
                 "focus = \"infinity\"",
             ] {
-                for errors in [
-                    "",
-                    "piston = \"0.6 rad\"\njitter = \"2 urad\"\ncommon_jitter = \"1 urad\"",
+                for (errors, narrow) in [
+                    ("", false),
+                    ("", shape != "hexagon"),
+                    (
+                        "piston = \"0.6 rad\"\njitter = \"2 urad\"\ncommon_jitter = \"1 urad\"",
+                        more.is_empty(),
+                    ),
                 ] {
                     cases.push((
-                        format!("{shape}, {name}, {target:?}, {errors:?}"),
+                        format!("{shape}, {name}, {target:?}, {errors:?}, narrow {narrow}"),
                         Case {
-                            layout: LAYOUTS[2].1,
+                            layout: LAYOUTS[if shape == "hexagon" { 0 } else { 2 }].1,
                             element: element(shape, more),
                             target,
                             errors: errors.to_string(),
                             samples: 2.0,
+                            narrow,
                         },
                     ));
                 }
@@ -271,6 +283,7 @@ fn sampled_agrees_with_the_direct_sum_at_commensurate_samplings() {
                     target: "",
                     errors: String::new(),
                     samples,
+                    narrow: false,
                 },
             ));
         }
@@ -290,6 +303,7 @@ fn a_grid_twice_as_fine_comes_closer_to_the_direct_sum() {
                 target: "",
                 errors: format!("{ALL_ERRORS}jitter = \"1 urad\""),
                 samples: 2.6,
+                narrow: false,
             };
             let (array, errors, grid, tilts) = prepared(folder.path(), &case);
             let draw = Draw::of_trial(&array, &errors, 1, 0);

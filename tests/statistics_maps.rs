@@ -62,10 +62,10 @@ fn the_mean_map_of_the_trials_is_the_closed_form_at_every_pixel() {
             "dark",
         ),
         (
-            "hexagons out of focus",
+            "hexagons",
             "layout = \"hexagonal\"\nrings = 1",
             "shape = \"hexagon\"\nsize = \"0.1 m\"",
-            "focus = \"1020 m\"",
+            "",
             "unlocked",
         ),
         (
