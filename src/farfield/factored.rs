@@ -10,7 +10,7 @@ use super::choose::Task;
 use super::kernel::{Axis, WIDTH};
 use super::map::{Grid, Map};
 use super::pattern::Wavefront;
-use super::tile::{Columns, Tile, Workspace, process, process_list};
+use super::tile::{Columns, Tile, Workspace, add_lane, process, process_list};
 use super::tilt::{Demand, TiltExpansion};
 use super::{FarField, Method, Radiated, Worker};
 use crate::array::bands::{Band, GROUP, LANES, TILE, bands};
@@ -37,7 +37,7 @@ pub struct Factored<'a> {
     expansion: TiltExpansion,
     sites: Prepared<'a>,
     fft: Arc<dyn Fft<f64>>,
-    /// fₜ on the map, without a tilt of the whole array.
+    /// fₜ on the map `[column][row]`, without a tilt of the whole array.
     fields: Vec<Vec<Complex64>>,
 }
 
@@ -161,7 +161,8 @@ impl FarField for Factored<'_> {
         Box::new(FactoredWorker {
             factored: self,
             workspace: Workspace::new(&self.expansion),
-            band: vec![0.0; terms * 2 * cells * LANES],
+            band: vec![[0.0; LANES]; terms * 2 * cells],
+            row: vec![Complex64::default(); cells],
             grids: vec![Complex64::default(); terms * cells * cells],
             lines: vec![Complex64::default(); GATHERED * self.axis.length],
             half_way: vec![Complex64::default(); cells * pixels],
@@ -176,14 +177,16 @@ struct FactoredWorker<'a> {
     factored: &'a Factored<'a>,
     workspace: Workspace,
     /// Cells of a band: `[term][real, imaginary][cell][row]`.
-    band: Vec<f32>,
+    band: Vec<[f32; LANES]>,
+    /// One row of the band's cells, for one term.
+    row: Vec<Complex64>,
     /// Spread strengths: `[term][cell along y][cell along x]`.
     grids: Vec<Complex64>,
     lines: Vec<Complex64>,
     /// After the pass along x: `[cell along y][map column]`.
     half_way: Vec<Complex64>,
     scratch: Vec<Complex64>,
-    /// Field at the map's pixels.
+    /// Field at the map's pixels, `[column][row]`.
     field: Vec<Complex64>,
     /// fₜ shifted by the tilt of the whole array, one term at a time.
     shifted: Vec<Complex64>,
@@ -214,8 +217,11 @@ impl Worker for FactoredWorker<'_> {
         };
         self.transform(common);
         let scale = (factored.array.wavelength_m * factored.array.range_m).powi(-2);
-        for (value, field) in map.irradiance_w_m2.iter_mut().zip(&self.field) {
-            *value = field.norm_sqr() * scale;
+        let pixels = factored.grid.pixels;
+        for (row, line) in map.irradiance_w_m2.chunks_exact_mut(pixels).enumerate() {
+            for (value, column) in line.iter_mut().zip(self.field.chunks_exact(pixels)) {
+                *value = column[row].norm_sqr() * scale;
+            }
         }
         radiated
     }
@@ -254,6 +260,7 @@ impl FactoredWorker<'_> {
         let factored = self.factored;
         let recipe = Recipe::new(trial);
         let tilted = light.defocus_per_m.abs() > 0.0;
+        let plain = !tilted && light.taper_per_m2 <= 0.0 && common == (0.0, 0.0);
         let x_m = [0, 1].map(|parity| -> Vec<f64> {
             (0..sites.columns.div_ceil(TILE) * TILE)
                 .map(|column| sites.x_m(parity, column))
@@ -274,7 +281,7 @@ impl FactoredWorker<'_> {
         });
         let mut radiated = Radiated::default();
         for band in bands {
-            self.band.fill(0.0);
+            self.band.fill([0.0; LANES]);
             self.workspace.power = [0.0; LANES];
             let occupied: Vec<[Range<usize>; 2]> = band
                 .rows
@@ -297,6 +304,7 @@ impl FactoredWorker<'_> {
                     tile,
                     columns: &columns[band.parity],
                     factor: &factors[band.parity][span.clone()],
+                    plain,
                     static_tilt_rad: tilted.then(|| (&tilts[band.parity][span.clone()], &along_y)),
                     occupied: (!full).then_some(&occupied[..]),
                 };
@@ -326,18 +334,17 @@ impl FactoredWorker<'_> {
         let cells = axis.cells;
         let (first, weights) = axis.spread(y_m);
         for (term, grid) in self.grids.chunks_exact_mut(cells * cells).enumerate() {
-            let part =
-                |part: usize| &self.band[(2 * term + part) * cells * LANES..][..cells * LANES];
-            let (real, imaginary) = (part(0), part(1));
-            for (tap, weight) in weights.iter().enumerate() {
-                let factor = weight * factor;
-                let row = &mut grid[(first + tap) * cells..(first + tap + 1) * cells];
-                for (cell, value) in row.iter_mut().enumerate() {
-                    let place = cell * LANES + lane;
-                    *value += factor
-                        * Complex64::new(f64::from(real[place]), f64::from(imaginary[place]));
-                }
-            }
+            let (real, imaginary) = self.band[2 * term * cells..][..2 * cells].split_at(cells);
+            let lines = &mut grid[first * cells..(first + WIDTH) * cells];
+            add_lane(
+                real,
+                imaginary,
+                lane,
+                factor,
+                &weights,
+                &mut self.row,
+                lines,
+            );
         }
     }
 
@@ -374,17 +381,12 @@ impl FactoredWorker<'_> {
                     Complex64::from_polar(elements.amplitude[n], elements.phase_rad[n] + lift);
                 radiated.power_w += self.workspace.power_of(slot) * light.norm_sqr();
                 let ([x, y], [across, along]) = &list.spreads[n];
-                for (strengths, grid) in self
+                for ((real, imaginary), grid) in self
                     .workspace
-                    .strengths()
-                    .iter()
+                    .strengths_of(slot)
                     .zip(self.grids.chunks_exact_mut(cells * cells))
                 {
-                    let strength = light
-                        * Complex64::new(
-                            f64::from(strengths[0][slot]),
-                            f64::from(strengths[1][slot]),
-                        );
+                    let strength = light * Complex64::new(f64::from(real), f64::from(imaginary));
                     for (row, weight) in along.iter().enumerate() {
                         let start = (*y as usize + row) * cells + *x as usize;
                         let strength = strength * f64::from(*weight);
@@ -454,10 +456,11 @@ impl FactoredWorker<'_> {
                 for column in 0..width {
                     let line = &mut self.lines[column * length..(column + 1) * length];
                     factored.fft.process_with_scratch(line, &mut self.scratch);
-                    for index in 0..pixels {
-                        let place = index * pixels + first + column;
-                        self.field[place] +=
-                            line[bin(index)] * axis.deconvolution[index] * pattern[place];
+                    let place = (first + column) * pixels;
+                    let field = &mut self.field[place..place + pixels];
+                    let pattern = &pattern[place..place + pixels];
+                    for (index, (value, pattern)) in field.iter_mut().zip(pattern).enumerate() {
+                        *value += line[bin(index)] * axis.deconvolution[index] * pattern;
                     }
                 }
             }

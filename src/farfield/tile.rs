@@ -12,10 +12,14 @@ use crate::perturb::State;
 use crate::perturb::block::{Block, Recipe};
 use crate::perturb::vector::{cos_sin_turns, fma};
 use multiversion::multiversion;
+use num_complex::Complex64;
 use std::ops::Range;
 
-/// Real and imaginary strength of each slot, for one term.
-type Strength = [[f32; GROUP]; 2];
+/// One value a row.
+pub type Lane = [f32; LANES];
+
+/// Real and imaginary strength of each slot, for one term: by column, then row.
+type Strength = [[Lane; TILE]; 2];
 
 /// Columns of one parity and the cells that gather them.
 #[derive(Debug, Clone)]
@@ -76,6 +80,8 @@ pub struct Tile<'a> {
     pub columns: &'a Columns,
     /// Factor (real, imaginary) on each column's elements.
     pub factor: &'a [[f32; 2]],
+    /// Whether every factor is 1.
+    pub plain: bool,
     /// Static tilt of each column along x, and of each row along y.
     pub static_tilt_rad: Option<(&'a [f32], &'a [f32; LANES])>,
     /// Columns of each row that carry an element, where not all do.
@@ -102,7 +108,7 @@ impl Workspace {
         Workspace {
             block: Block::default(),
             monomials: vec![[1.0; GROUP]; expansion.monomials.len()],
-            strengths: vec![[[0.0; GROUP]; 2]; expansion.terms()],
+            strengths: vec![[[[0.0; LANES]; TILE]; 2]; expansion.terms()],
             power: [0.0; LANES],
             dark: 0,
             unlocked: 0,
@@ -114,9 +120,11 @@ impl Workspace {
         f64::from(self.block.amplitude[slot]).powi(2)
     }
 
-    /// Strengths of the last group, by term.
-    pub fn strengths(&self) -> &[Strength] {
-        &self.strengths
+    /// Strength of a slot of the last group, real and imaginary, for every term.
+    pub fn strengths_of(&self, slot: usize) -> impl Iterator<Item = (f32, f32)> {
+        self.strengths.iter().map(move |[real, imaginary]| {
+            (real.as_flattened()[slot], imaginary.as_flattened()[slot])
+        })
     }
 }
 
@@ -130,7 +138,7 @@ pub fn process(
     expansion: &TiltExpansion,
     tile: &Tile<'_>,
     workspace: &mut Workspace,
-    cells: &mut [f32],
+    cells: &mut [Lane],
 ) {
     const FUSED: bool =
         multiversion::target::target_cfg_f!(any(target_feature = "fma", target_arch = "aarch64"));
@@ -143,7 +151,9 @@ pub fn process(
     }
     strengths::<FUSED>(expansion, workspace);
     take_census(recipe, tile.factor, workspace);
-    apply_factor::<FUSED>(tile.factor, workspace);
+    if !tile.plain {
+        apply_factor::<FUSED>(tile.factor, workspace);
+    }
     let count = expansion.terms();
     let (each, mut term) = (cells.len() / count, 0);
     while term < count {
@@ -191,6 +201,31 @@ pub fn process_list(
     }
     strengths::<FUSED>(expansion, workspace);
     take_census(recipe, &[], workspace);
+}
+
+/// Add one row of a band's cells, times a factor, to the grid lines that it reaches.
+#[multiversion(targets(
+    "x86_64+avx2+fma+avx512f+avx512bw+avx512dq+avx512vl",
+    "x86_64+avx2+fma"
+))]
+pub fn add_lane(
+    real: &[Lane],
+    imaginary: &[Lane],
+    lane: usize,
+    factor: Complex64,
+    weights: &[f64; WIDTH],
+    row: &mut [Complex64],
+    lines: &mut [Complex64],
+) {
+    for ((value, real), imaginary) in row.iter_mut().zip(real).zip(imaginary) {
+        *value = factor * Complex64::new(f64::from(real[lane]), f64::from(imaginary[lane]));
+    }
+    for (line, &weight) in lines.chunks_exact_mut(row.len()).zip(weights) {
+        for (value, part) in line.iter_mut().zip(row.iter()) {
+            value.re += weight * part.re;
+            value.im += weight * part.im;
+        }
+    }
 }
 
 /// Darken slots without an element.
@@ -262,9 +297,11 @@ fn strengths<const FUSED: bool>(expansion: &TiltExpansion, workspace: &mut Works
                     sum[lane] = fma::<FUSED>(coefficient, values[lane], sum[lane]);
                 }
             }
+            let real = &mut real.as_flattened_mut()[start..start + CHUNK];
+            let imaginary = &mut imaginary.as_flattened_mut()[start..start + CHUNK];
             for lane in 0..CHUNK {
-                real[start + lane] = sum[lane] * cos[start + lane];
-                imaginary[start + lane] = sum[lane] * sin[start + lane];
+                real[lane] = sum[lane] * cos[start + lane];
+                imaginary[lane] = sum[lane] * sin[start + lane];
             }
         }
     }
@@ -299,11 +336,11 @@ fn take_census(recipe: &Recipe, factor: &[[f32; 2]], workspace: &mut Workspace) 
 #[inline(always)]
 fn apply_factor<const FUSED: bool>(factor: &[[f32; 2]], workspace: &mut Workspace) {
     for [real, imaginary] in &mut workspace.strengths {
-        for (column, [a, b]) in factor.iter().enumerate() {
-            for slot in column * LANES..(column + 1) * LANES {
-                let (x, y) = (real[slot], imaginary[slot]);
-                real[slot] = fma::<FUSED>(*a, x, -(b * y));
-                imaginary[slot] = fma::<FUSED>(*a, y, b * x);
+        for ((real, imaginary), [a, b]) in real.iter_mut().zip(imaginary).zip(factor) {
+            for lane in 0..LANES {
+                let (x, y) = (real[lane], imaginary[lane]);
+                real[lane] = fma::<FUSED>(*a, x, -(b * y));
+                imaginary[lane] = fma::<FUSED>(*a, y, b * x);
             }
         }
     }
@@ -314,18 +351,17 @@ fn apply_factor<const FUSED: bool>(factor: &[[f32; 2]], workspace: &mut Workspac
 fn gather_terms<const FUSED: bool, const N: usize>(
     tile: &Tile<'_>,
     strengths: &[Strength],
-    cells: &mut [f32],
+    cells: &mut [Lane],
 ) -> usize {
     let per_part = cells.len() / (2 * strengths.len());
     let strengths: &[Strength; N] = strengths.first_chunk().expect("as many terms as counted");
     for cell in tile.columns.tiles[tile.tile].clone() {
         let (first, weights) = tile.columns.gather(cell, tile.tile);
-        let mut sums = [[[0.0f32; LANES]; 2]; N];
+        let mut sums: [[Lane; 2]; N] = [[[0.0; LANES]; 2]; N];
         for (index, &weight) in weights.iter().enumerate() {
-            let start = (first + index) * LANES;
             for term in 0..N {
                 for part in 0..2 {
-                    let values = &strengths[term][part][start..start + LANES];
+                    let values = &strengths[term][part][first + index];
                     for lane in 0..LANES {
                         sums[term][part][lane] =
                             fma::<FUSED>(weight, values[lane], sums[term][part][lane]);
@@ -335,9 +371,9 @@ fn gather_terms<const FUSED: bool, const N: usize>(
         }
         for term in 0..N {
             for part in 0..2 {
-                let start = (2 * term + part) * per_part + cell * LANES;
+                let values = &mut cells[(2 * term + part) * per_part + cell];
                 for lane in 0..LANES {
-                    cells[start + lane] += sums[term][part][lane];
+                    values[lane] += sums[term][part][lane];
                 }
             }
         }

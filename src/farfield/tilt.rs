@@ -30,7 +30,7 @@ pub struct TiltExpansion {
     pub monomials: Vec<(usize, usize)>,
     /// gₜ.
     pub polynomials: Vec<Polynomial>,
-    /// Chebyshev coefficients of each fₜ, `[y][x]`, over ±`half_width_rad`.
+    /// Chebyshev coefficients of each fₜ, `[x][y]`, over ±`half_width_rad`.
     fields: Vec<Vec<Complex64>>,
     nodes: usize,
     half_width_rad: f64,
@@ -106,7 +106,7 @@ impl TiltExpansion {
                         *value += weight * part;
                     }
                 }
-                grid.coefficients(&values)
+                transposed(&grid.coefficients(&values), nodes)
             })
             .collect();
         Some(TiltExpansion {
@@ -128,7 +128,7 @@ impl TiltExpansion {
         self.polynomials.len()
     }
 
-    /// fₜ at every pair of directions, `[y][x]`, into `values`.
+    /// fₜ at every pair of directions, `[x][y]`, into `values`.
     pub fn evaluate(
         &self,
         term: usize,
@@ -148,8 +148,8 @@ impl TiltExpansion {
             }
             rows
         };
-        let (across, along) = (basis(theta_x), basis(theta_y));
-        // Along x for each Chebyshev order of y: [order][direction].
+        let (across, along) = (basis(theta_y), basis(theta_x));
+        // Along y for each Chebyshev order of x: [order][direction].
         let half_way: Vec<Complex64> = self.fields[term]
             .chunks_exact(self.nodes)
             .flat_map(|row| {
@@ -159,11 +159,11 @@ impl TiltExpansion {
             })
             .collect();
         for (line, basis) in values
-            .chunks_exact_mut(theta_x.len())
+            .chunks_exact_mut(theta_y.len())
             .zip(along.chunks_exact(self.nodes))
         {
             line.fill(Complex64::default());
-            for (order, part) in basis.iter().zip(half_way.chunks_exact(theta_x.len())) {
+            for (order, part) in basis.iter().zip(half_way.chunks_exact(theta_y.len())) {
                 for (value, part) in line.iter_mut().zip(part) {
                     *value += order * part;
                 }
@@ -229,6 +229,13 @@ impl Chebyshev {
         }
         both
     }
+}
+
+/// A square matrix, transposed.
+fn transposed(values: &[Complex64], size: usize) -> Vec<Complex64> {
+    (0..size * size)
+        .map(|place| values[place % size * size + place / size])
+        .collect()
 }
 
 /// C[monomial's (j, l)][θ], `[y][x]` within a column.

@@ -138,7 +138,11 @@ fn refuse_wild_tilts(scenario: &Scenario, array: &Array) -> Result<(), ScenarioE
     };
     for (key, tilt_rad, most) in [
         ("errors.jitter", errors.jitter_rad.rms(), 10.0),
-        ("errors.common_jitter", errors.common_jitter_rad.rms(), 100.0),
+        (
+            "errors.common_jitter",
+            errors.common_jitter_rad.rms(),
+            100.0,
+        ),
         (steady, array.largest_tilt_rad(), 1000.0),
         ("target.focus", inside_rad, 1000.0),
     ] {
