@@ -13,7 +13,7 @@
 
 use super::choose::{Refusal, Task, choose};
 use super::map::{Grid, Map};
-use super::pattern::{ElementPattern, Wavefront};
+use super::pattern::{Wavefront, on_grid};
 use super::smooth::Samples;
 use crate::array::{Array, Elements};
 use crate::perturb::TrialErrors;
@@ -80,9 +80,7 @@ pub fn mean_map(array: &Array, errors: &Errors, grid: Grid) -> Result<Map, Refus
         pixel_m: grid.pixel_m,
     };
     let map = independent_mean(array, errors, wide)?;
-    let centre = wide.centre() as f64;
-    let index = |x: f64| (x / grid.pixel_m + centre).round() as usize;
-    let mut spectrum = samples.spectrum(|u, v| map.at(index(v), index(u)));
+    let mut spectrum = samples.spectrum(&map.irradiance_w_m2);
     let frequencies = samples.frequencies();
     for (row, fy) in spectrum.chunks_exact_mut(samples.count).zip(&frequencies) {
         for (value, fx) in row.iter_mut().zip(&frequencies) {
@@ -131,21 +129,19 @@ fn scattered(array: &Array, moments: Moments, jitter_rad: f64, grid: Grid) -> Ve
     let theta: Vec<f64> = grid.axis_m().iter().map(|u| u / array.range_m).collect();
     let flat = grid.width_m() / 2.0 / array.range_m + array.largest_tilt_rad() + 6.0 * jitter_rad;
     let samples = Samples::new(flat, band, 0.25 / band);
-    let reach = std::f64::consts::SQRT_2 * samples.count as f64 * samples.spacing / 2.0;
-    let pattern = |mean_over_tilt_rad: f64| {
-        ElementPattern::new(
-            &array.element,
-            array.wavenumber(),
-            Wavefront {
-                curvature_per_m: array.curvature_per_m,
-                mean_over_tilt_rad,
-            },
-            reach,
-        )
+    let angles = samples.axis();
+    let squares = |mean_over_tilt_rad: f64| -> Vec<f64> {
+        let wavefront = Wavefront {
+            curvature_per_m: array.curvature_per_m,
+            mean_over_tilt_rad,
+        };
+        on_grid(&array.element, array.wavenumber(), wavefront, &angles)
+            .iter()
+            .map(Complex64::norm_sqr)
+            .collect()
     };
-    let (one, mean) = (pattern(0.0), pattern(jitter_rad));
-    let mut spectrum = samples.spectrum(|x, y| one.at(x, y).norm_sqr());
-    let coherent = samples.spectrum(|x, y| mean.at(x, y).norm_sqr());
+    let mut spectrum = samples.spectrum(&squares(0.0));
+    let coherent = samples.spectrum(&squares(jitter_rad));
     let shifts = shifts(array, &samples);
     let frequencies = samples.frequencies();
     let scale = (array.wavelength_m * array.range_m).powi(-2);

@@ -10,7 +10,9 @@ use super::choose::Task;
 use super::kernel::{Axis, WIDTH};
 use super::map::{Grid, Map};
 use super::pattern::Wavefront;
-use super::tile::{Columns, Tile, Workspace, add_lane, process, process_list};
+use super::tile::{
+    Columns, RunningColumns, Tile, Workspace, add_lane, process, process_list, spread_row,
+};
 use super::tilt::{Demand, TiltExpansion};
 use super::{FarField, Method, Radiated, Worker};
 use crate::array::bands::{Band, GROUP, LANES, TILE, bands};
@@ -21,7 +23,7 @@ use crate::perturb::block::Recipe;
 use num_complex::Complex64;
 use rustfft::{Fft, FftPlanner};
 use std::ops::Range;
-use std::sync::Arc;
+use std::sync::{Arc, OnceLock};
 
 /// Error of the tilt expansion over the peak amplitude.
 const TOLERANCE: f64 = 4e-7;
@@ -49,6 +51,8 @@ enum Prepared<'a> {
         taper_per_m2: f64,
         bands: Vec<Band>,
         columns: [Columns; 2],
+        /// Sums along rows for the array without errors, once they are needed.
+        running: OnceLock<[RunningColumns; 2]>,
     },
     List(Box<List>),
 }
@@ -105,6 +109,7 @@ impl<'a> Factored<'a> {
                         .collect();
                     Columns::new(&axis, &x_m)
                 }),
+                running: OnceLock::new(),
             },
             Sites::List(_) => Prepared::List(Box::new(List::new(array, &axis))),
         };
@@ -204,6 +209,7 @@ impl Worker for FactoredWorker<'_> {
                 taper_per_m2,
                 bands,
                 columns,
+                running,
             } => {
                 let light = Light {
                     amplitude: *amplitude,
@@ -211,7 +217,19 @@ impl Worker for FactoredWorker<'_> {
                     wavenumber: factored.array.wavenumber(),
                     defocus_per_m: factored.array.defocus_per_m,
                 };
-                self.spread_lattice(trial, common, sites, &light, bands, columns)
+                if trial.errors.is_none() && factored.expansion.monomials.len() == 1 {
+                    let running = running.get_or_init(|| {
+                        [0, 1].map(|parity| {
+                            let factors: Vec<Complex64> = (0..sites.columns)
+                                .map(|column| light.factor(sites.x_m(parity, column), 0.0))
+                                .collect();
+                            columns[parity].running(&factors)
+                        })
+                    });
+                    self.spread_still(sites, &light, running)
+                } else {
+                    self.spread_lattice(trial, common, sites, &light, bands, columns)
+                }
             }
             Prepared::List(list) => self.spread_list(trial, common, list),
         };
@@ -326,6 +344,28 @@ impl FactoredWorker<'_> {
         radiated.dark = std::mem::take(&mut self.workspace.dark);
         radiated.unlocked = std::mem::take(&mut self.workspace.unlocked);
         radiated
+    }
+
+    /// Spread a lattice without errors, row by row whatever the number of its columns.
+    fn spread_still(
+        &mut self,
+        sites: &LatticeSites,
+        light: &Light,
+        running: &[RunningColumns; 2],
+    ) -> Radiated {
+        let axis = &self.factored.axis;
+        let grid = &mut self.grids[..axis.cells * axis.cells];
+        for row in &sites.rows {
+            let (first, weights) = axis.spread(row.y_m);
+            let factor = light.amplitude * light.factor(row.y_m, 0.0);
+            running[row.parity].row(&row.spans, factor, &mut self.row);
+            let lines = &mut grid[first * axis.cells..(first + WIDTH) * axis.cells];
+            spread_row(&self.row, &weights, lines);
+        }
+        Radiated {
+            power_w: self.factored.array.power_w(),
+            ..Radiated::default()
+        }
     }
 
     /// Spread one row's cells along y.

@@ -15,6 +15,7 @@ use super::quadrature::gauss_legendre;
 use crate::array::element::SQRT_3;
 use crate::scenario::{Element, Shape};
 use num_complex::Complex64;
+use rayon::prelude::*;
 use std::f64::consts::PI;
 
 /// The far field of one element, in metres (field per √W, times λ·range).
@@ -173,6 +174,52 @@ pub fn element_strips(
         strips.extend(disc(element.obscuration * half, -scale));
     }
     strips
+}
+
+/// A(θ) at every pair of `angles_rad`, `[y][x]`: strip by strip, which separates the two axes.
+pub fn on_grid(
+    element: &Element,
+    wavenumber: f64,
+    wavefront: Wavefront,
+    angles_rad: &[f64],
+) -> Vec<Complex64> {
+    let largest = angles_rad.iter().fold(0.0, |a: f64, b| a.max(b.abs()));
+    let diagonal = std::f64::consts::SQRT_2 * largest;
+    let strips = element_strips(element, wavenumber, wavefront, diagonal, 0);
+    // Along y first: [strip][θy].
+    let along: Vec<Vec<Complex64>> = strips
+        .par_iter()
+        .map(|strip| {
+            let wave = |angle: &f64, y: f64| Complex64::cis(-wavenumber * angle * y);
+            let sum = |angle| {
+                strip
+                    .nodes
+                    .iter()
+                    .map(|&(y, weight)| weight * wave(angle, y))
+                    .sum()
+            };
+            angles_rad.iter().map(sum).collect()
+        })
+        .collect();
+    let waves: Vec<Vec<Complex64>> = strips
+        .iter()
+        .map(|strip| {
+            let wave = |angle: &f64| Complex64::cis(-wavenumber * angle * strip.x_m);
+            angles_rad.iter().map(wave).collect()
+        })
+        .collect();
+    (0..angles_rad.len())
+        .into_par_iter()
+        .flat_map_iter(|row| {
+            let mut line = vec![Complex64::default(); angles_rad.len()];
+            for (along, waves) in along.iter().zip(&waves) {
+                for (value, wave) in line.iter_mut().zip(waves) {
+                    *value += along[row] * wave;
+                }
+            }
+            line
+        })
+        .collect()
 }
 
 /// ∫exp(−2s²/w²) over the open element: the profile's power for unit irradiance at its centre.

@@ -57,9 +57,9 @@ impl Samples {
             .collect()
     }
 
-    /// Spectrum of tapered samples `[y, x]`, divided by count²: coefficients of exp(i2π(fx·x + fy·y)).
-    pub fn spectrum(&self, samples: impl Fn(f64, f64) -> f64 + Sync) -> Vec<Complex64> {
-        let (axis, taper, count) = (self.axis(), self.taper(), self.count);
+    /// Spectrum of samples `[y, x]` once tapered, divided by count²: coefficients of exp(i2π(fx·x + fy·y)).
+    pub fn spectrum(&self, samples: &[f64]) -> Vec<Complex64> {
+        let (taper, count) = (self.taper(), self.count);
         let half = count / 2;
         let mut values = vec![Complex64::default(); count * count];
         // The origin goes to index 0, so that phases refer to it.
@@ -70,7 +70,7 @@ impl Samples {
                 let j = (place + half) % count;
                 for (place, value) in row.iter_mut().enumerate() {
                     let i = (place + half) % count;
-                    *value = (taper[i] * taper[j] * samples(axis[i], axis[j])).into();
+                    *value = (taper[i] * taper[j] * samples[j * count + i]).into();
                 }
             });
         transform_square(&mut values, count, FftDirection::Forward);

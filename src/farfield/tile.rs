@@ -58,6 +58,27 @@ impl Columns {
         }
     }
 
+    /// Running sums over the columns of every cell's weights times `factor`, for rows
+    /// that all their columns fill alike.
+    pub fn running(&self, factor: &[Complex64]) -> RunningColumns {
+        let mut sums = Vec::with_capacity(self.weights.len() + self.gathers.len());
+        let starts = self
+            .gathers
+            .iter()
+            .map(|(columns, offset)| {
+                let start = sums.len();
+                let mut sum = Complex64::default();
+                sums.push(sum);
+                for (column, weight) in columns.clone().zip(&self.weights[*offset..]) {
+                    sum += factor[column] * f64::from(*weight);
+                    sums.push(sum);
+                }
+                (columns.clone(), start)
+            })
+            .collect();
+        RunningColumns { starts, sums }
+    }
+
     /// Part of a cell's gather that lies in a tile: columns within the tile, and their weights.
     #[inline(always)]
     fn gather(&self, cell: usize, tile: usize) -> (usize, &[f32]) {
@@ -66,6 +87,31 @@ impl Columns {
         let end = columns.end.min((tile + 1) * TILE).max(start);
         let from = offset + start - columns.start;
         (start - tile * TILE, &self.weights[from..from + end - start])
+    }
+}
+
+/// Sums over columns, to be read for any span of them.
+#[derive(Debug)]
+pub struct RunningColumns {
+    /// For every cell: the columns in its reach, and where their sums begin.
+    starts: Vec<(Range<usize>, usize)>,
+    sums: Vec<Complex64>,
+}
+
+impl RunningColumns {
+    /// What the columns of a row's spans bring to every cell, times `factor`.
+    pub fn row(&self, spans: &[Range<usize>; 2], factor: Complex64, cells: &mut [Complex64]) {
+        for (value, (columns, start)) in cells.iter_mut().zip(&self.starts) {
+            let up_to = |column: usize| {
+                self.sums[start + column.clamp(columns.start, columns.end) - columns.start]
+            };
+            let sum: Complex64 = spans
+                .iter()
+                .filter(|span| !span.is_empty())
+                .map(|span| up_to(span.end) - up_to(span.start))
+                .sum();
+            *value = factor * sum;
+        }
     }
 }
 
@@ -220,8 +266,14 @@ pub fn add_lane(
     for ((value, real), imaginary) in row.iter_mut().zip(real).zip(imaginary) {
         *value = factor * Complex64::new(f64::from(real[lane]), f64::from(imaginary[lane]));
     }
+    spread_row(row, weights, lines);
+}
+
+/// Add a row of cells to the grid lines that it reaches.
+#[inline(always)]
+pub fn spread_row(row: &[Complex64], weights: &[f64; WIDTH], lines: &mut [Complex64]) {
     for (line, &weight) in lines.chunks_exact_mut(row.len()).zip(weights) {
-        for (value, part) in line.iter_mut().zip(row.iter()) {
+        for (value, part) in line.iter_mut().zip(row) {
             value.re += weight * part.re;
             value.im += weight * part.im;
         }

@@ -1,8 +1,8 @@
 //! The brightest lobes of the array without errors, inside the window and beyond it.
 //!
 //! Out to a few element beam widths the lobes are local maxima of a wide map; the
-//! grating lobes of a lattice beyond that map are found at λ times the reciprocal
-//! lattice's vectors and evaluated by the direct sum.
+//! grating lobes of a lattice beyond that map stand at λ times the reciprocal lattice's
+//! vectors, as bright as the element pattern leaves them.
 
 use super::interpolate::Interpolant;
 use super::spot::{local_maxima, refine};
@@ -10,7 +10,7 @@ use crate::array::Array;
 use crate::array::element::SQRT_3;
 use crate::farfield::choose::{Task, choose};
 use crate::farfield::pattern::{ElementPattern, Wavefront};
-use crate::farfield::{Direct, Grid, Map};
+use crate::farfield::{Grid, Map};
 use crate::perturb::TrialErrors;
 use crate::scenario::{Errors, Lattice, MethodChoice};
 
@@ -70,7 +70,7 @@ pub fn brightest(array: &Array, window_m: f64) -> Vec<Lobe> {
             }
         })
         .collect();
-    lobes.extend(grating_lobes(array, grid));
+    lobes.extend(grating_lobes(array, grid, map.aim_w_m2()));
     lobes.sort_by(|a, b| b.irradiance_over_peak.total_cmp(&a.irradiance_over_peak));
     lobes.truncate(LISTED);
     let peak = lobes.first().map_or(1.0, |lobe| lobe.irradiance_over_peak);
@@ -81,8 +81,9 @@ pub fn brightest(array: &Array, window_m: f64) -> Vec<Lobe> {
     lobes
 }
 
-/// Grating lobes of a lattice outside `seen`, with absolute irradiance.
-fn grating_lobes(array: &Array, seen: Grid) -> Vec<Lobe> {
+/// Grating lobes of a lattice outside `seen`, with absolute irradiance: that at the aim point times
+/// the element pattern's fall. What a focus elsewhere tilts the elements by is left out.
+fn grating_lobes(array: &Array, seen: Grid, aim_w_m2: f64) -> Vec<Lobe> {
     let Some(sites) = array.lattice().filter(|_| array.len() > 1) else {
         return Vec::new();
     };
@@ -112,20 +113,17 @@ fn grating_lobes(array: &Array, seen: Grid) -> Vec<Lobe> {
         },
         reach,
     );
-    let strength = |direction: &(f64, f64)| pattern.at(direction.0, direction.1).norm_sqr();
-    directions.sort_by(|a, b| strength(b).total_cmp(&strength(a)));
+    let irradiance = |(x, y): (f64, f64)| pattern.at(x, y).norm_sqr();
+    directions.sort_by(|&a, &b| irradiance(b).total_cmp(&irradiance(a)));
     directions.truncate(LISTED);
-    let everywhere = Grid {
-        pixels: 1,
-        pixel_m: 2.0 * reach * array.range_m,
-    };
-    let direct = Direct::new(array, Task::still(everywhere));
+    // The array factor repeats at every grating order; at the centre of the map it has been seen.
+    let centre = irradiance((0.0, 0.0));
     directions
         .into_iter()
-        .map(|(theta_x_rad, theta_y_rad)| Lobe {
-            theta_x_rad,
-            theta_y_rad,
-            irradiance_over_peak: direct.irradiance_without_errors_at(theta_x_rad, theta_y_rad),
+        .map(|direction| Lobe {
+            theta_x_rad: direction.0,
+            theta_y_rad: direction.1,
+            irradiance_over_peak: aim_w_m2 * irradiance(direction) / centre,
         })
         .collect()
 }

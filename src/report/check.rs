@@ -31,7 +31,7 @@ fn run_bytes(setup: &Setup, threads: usize) -> f64 {
 /// The same as data.
 pub fn run_facts(setup: &Setup, threads: usize, pace: f64) -> Value {
     json!({
-        "method": setup.choice.method().name(),
+        "method": setup.method(),
         "trials": setup.scenario.run.trials,
         "threads": threads,
         "window_m": setup.grid.width_m(),
@@ -143,11 +143,7 @@ pub fn describe(setup: &Setup, threads: usize, pace: f64) -> String {
     );
     fact(
         "method",
-        format!(
-            "{}: {}",
-            setup.choice.method().name(),
-            setup.choice.description()
-        ),
+        format!("{}: {}", setup.method(), setup.choice.description()),
     );
     fact(
         "assess will take",

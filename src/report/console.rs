@@ -324,12 +324,15 @@ fn setting(outcome: &Outcome) -> Vec<String> {
             setup.grid.pixels,
             setup.grid.pixels,
         ),
-        format!(
-            "Run: {} trials, seed {}, method \"{}\".{predicted}",
-            scenario.run.trials,
-            scenario.run.seed,
-            setup.choice.method().name(),
-        ),
+        match setup.closed_form {
+            Some(_) => "Run: means in closed form, no trials.".to_string(),
+            None => format!(
+                "Run: {} trials, seed {}, method \"{}\".{predicted}",
+                scenario.run.trials,
+                scenario.run.seed,
+                setup.method(),
+            ),
+        },
     ]
 }
 

@@ -7,7 +7,7 @@ use crate::farfield::Map;
 use crate::figures::Figures;
 use crate::perturb::{TrialErrors, for_each_element};
 use crate::scenario::Figure;
-use crate::study::assess::Outcome;
+use crate::study::assess::{Outcome, Shown};
 use rayon::prelude::*;
 
 /// A file to be written: its name and its bytes.
@@ -29,8 +29,8 @@ pub const NAMES: [&str; 12] = [
     "strehl.png",
 ];
 
-/// Draws one picture of an outcome.
-type Painter = fn(&Outcome) -> Vec<u8>;
+/// Draws one picture of an outcome, where it has what the picture shows.
+type Painter = fn(&Outcome) -> Option<Vec<u8>>;
 
 /// The scenario as run, the tables and the maps of an `assess`.
 ///
@@ -51,48 +51,51 @@ pub fn tables(outcome: &Outcome) -> Result<Vec<File>, ndarray_npy::WriteNpzError
     .into())
 }
 
-/// The pictures of an `assess`, drawn in parallel.
+/// The pictures of an `assess`, drawn in parallel; in closed form those that need no trial.
 pub fn pictures(outcome: &Outcome) -> Vec<File> {
-    let draw: [(&str, Painter); 6] = [
+    let painters: [(&str, Painter); 6] = [
         ("map_ideal.png", |outcome| {
             let setup = &outcome.setup;
-            map(
-                outcome,
-                "without errors",
-                &setup.ideal_map,
-                &setup.ideal.figures,
-            )
+            let figures = &setup.ideal.figures;
+            Some(map(outcome, "without errors", &setup.ideal_map, figures))
         }),
         ("map_one_trial.png", |outcome| {
-            let shown = &outcome.shown;
-            map(outcome, &shown_caption(outcome), &shown.map, &shown.figures)
+            let shown = outcome.shown.as_ref()?;
+            Some(map(outcome, &caption(shown), &shown.map, &shown.figures))
         }),
         ("map_long_exposure.png", |outcome| {
-            let caption = format!(
-                "long exposure: mean of {} trials",
-                outcome.trials.trials.len()
-            );
+            let what = format!("long exposure: {}", averaged(outcome));
             let figures = &outcome.long_exposure.figures;
-            map(outcome, &caption, &outcome.trials.mean_map, figures)
+            Some(map(outcome, &what, &outcome.trials.mean_map, figures))
         }),
         ("aperture.png", aperture),
         ("encircled.png", encircled),
         ("strehl.png", histogram),
     ];
-    draw.par_iter()
-        .map(|(name, draw)| (name.to_string(), draw(outcome)))
+    painters
+        .par_iter()
+        .filter_map(|(name, draw)| Some((name.to_string(), draw(outcome)?)))
         .collect()
 }
 
-fn shown_caption(outcome: &Outcome) -> String {
-    let strehl = match outcome.shown.figures.get(Figure::Strehl) {
+/// What the long exposure is a mean of.
+fn averaged(outcome: &Outcome) -> String {
+    if outcome.setup.closed_form.is_some() {
+        "mean in closed form".to_string()
+    } else {
+        format!("mean of {} trials", outcome.trials.trials.len())
+    }
+}
+
+fn caption(shown: &Shown) -> String {
+    let strehl = match shown.figures.get(Figure::Strehl) {
         Some(strehl) => format!(
             ", Strehl ratio {} (nearest the median)",
             significant(strehl, 3)
         ),
         None => String::new(),
     };
-    format!("one trial, no. {}{strehl}", outcome.shown.trial)
+    format!("one trial, no. {}{strehl}", shown.trial)
 }
 
 fn map(outcome: &Outcome, what: &str, map: &Map, figures: &Figures) -> Vec<u8> {
@@ -109,32 +112,33 @@ fn map(outcome: &Outcome, what: &str, map: &Map, figures: &Figures) -> Vec<u8> {
     .png()
 }
 
-fn aperture(outcome: &Outcome) -> Vec<u8> {
+fn aperture(outcome: &Outcome) -> Option<Vec<u8>> {
+    let shown = outcome.shown.as_ref()?;
     let setup = &outcome.setup;
     let trial = TrialErrors {
         errors: &setup.scenario.errors,
         seed: setup.scenario.run.seed,
-        trial: outcome.shown.trial,
+        trial: shown.trial,
     };
-    AperturePicture {
+    let picture = AperturePicture {
         title: &setup.scenario.title,
-        what: &shown_caption(outcome),
+        what: &caption(shown),
         element: setup.array.element,
         envelope_diameter_m: setup.array.envelope_diameter_m,
         elements: &|visit| for_each_element(&setup.array, trial, visit),
         wavelength_m: setup.array.wavelength_m,
-    }
-    .png()
+    };
+    Some(picture.png())
 }
 
-fn encircled(outcome: &Outcome) -> Vec<u8> {
+fn encircled(outcome: &Outcome) -> Option<Vec<u8>> {
     let band = &outcome.encircled;
     let half = |diameter: Option<f64>| diameter.map(|diameter| diameter / 2.0);
-    EncircledPicture {
+    let picture = EncircledPicture {
         title: &outcome.setup.scenario.title,
         what: &format!(
-            "power within a circle, {} trials",
-            outcome.trials.trials.len()
+            "power within a circle, long exposure a {}",
+            averaged(outcome)
         ),
         radius_m: &band.radius_m,
         ideal: &band.ideal,
@@ -148,22 +152,23 @@ fn encircled(outcome: &Outcome) -> Vec<u8> {
                 .figures
                 .get(Figure::Encircled80Diameter),
         ),
-    }
-    .png()
+    };
+    Some(picture.png())
 }
 
-fn histogram(outcome: &Outcome) -> Vec<u8> {
+fn histogram(outcome: &Outcome) -> Option<Vec<u8>> {
+    outcome.shown.as_ref()?;
     let trials = &outcome.trials.trials;
     let values: Vec<f64> = trials
         .iter()
         .map(|trial| trial.figures.get(Figure::Strehl).unwrap_or(f64::NAN))
         .collect();
-    HistogramPicture {
+    let picture = HistogramPicture {
         title: &outcome.setup.scenario.title,
         values: &values,
         mean: outcome.statistics[Figure::Strehl as usize].1.mean,
         bounds: &outcome.setup.scenario.require.bounds,
         predicted_mean: outcome.predicted.figures.get(Figure::Strehl),
-    }
-    .png()
+    };
+    Some(picture.png())
 }

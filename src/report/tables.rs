@@ -98,7 +98,9 @@ pub fn maps(outcome: &Outcome) -> Result<Vec<u8>, WriteNpzError> {
     };
     add("ideal", &outcome.setup.ideal_map)?;
     add("long_exposure", &outcome.trials.mean_map)?;
-    add("one_trial", &outcome.shown.map)?;
+    if let Some(shown) = &outcome.shown {
+        add("one_trial", &shown.map)?;
+    }
     let axis = Array1::from_vec(outcome.setup.grid.axis_m());
     archive.add_array("u_m", &axis)?;
     archive.add_array("v_m", &axis)?;

@@ -324,6 +324,15 @@ impl Scenario {
 }
 
 impl Errors {
+    /// Whether nothing is in error.
+    pub fn is_none(&self) -> bool {
+        [&self.piston_rad, &self.jitter_rad, &self.common_jitter_rad]
+            .iter()
+            .all(|part| part.rms() <= 0.0)
+            && self.dropout <= 0.0
+            && self.power_spread <= 0.0
+    }
+
     /// No errors at all.
     pub fn none() -> Errors {
         Errors {

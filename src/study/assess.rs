@@ -1,7 +1,7 @@
 //! `assess`: what does this array put on its target, and does that meet the requirement?
 
 use super::requirement::{Verdict, judge};
-use super::setup::Setup;
+use super::setup::{LINEAR, Setup};
 use crate::farfield::closed_form::{Moments, mean_map};
 use crate::farfield::{FarField, Map};
 use crate::figures::lobes::{Lobe, brightest};
@@ -16,7 +16,7 @@ use crate::trials::{Machine, Progress, Trials, run};
 pub struct Outcome {
     /// The scenario, its array and the array without errors.
     pub setup: Setup,
-    /// Every trial, and the long exposure's map.
+    /// Every trial, and the long exposure's map; in closed form that map and no trial.
     pub trials: Trials,
     /// Statistics of every figure, in the order of [`Figure::ALL`].
     pub statistics: Vec<(Figure, Summary)>,
@@ -28,8 +28,8 @@ pub struct Outcome {
     pub alone: Vec<Alone>,
     /// The verdict.
     pub verdict: Verdict,
-    /// The trial whose Strehl ratio is nearest the median.
-    pub shown: Shown,
+    /// The trial whose Strehl ratio is nearest the median; none in closed form.
+    pub shown: Option<Shown>,
     /// Shares of P within each radius of the reader.
     pub encircled: EncircledBand,
     /// Brightest lobes of the array without errors.
@@ -86,44 +86,41 @@ pub struct EncircledBand {
 
 /// Run the study on the current thread pool.
 pub fn assess(setup: Setup, progress: &dyn Progress) -> Outcome {
-    let count = setup.scenario.run.trials;
-    let far_field = setup.choice.prepare(&setup.array);
-    let machine = Machine {
-        errors: &setup.scenario.errors,
-        seed: setup.scenario.run.seed,
-        far_field: far_field.as_ref(),
-        reader: &setup.reader,
+    let (trials, shown) = if let Some(mean_map) = &setup.closed_form {
+        (means(&setup, mean_map.clone()), None)
+    } else {
+        let far_field = setup.choice.prepare(&setup.array);
+        let machine = Machine {
+            errors: &setup.scenario.errors,
+            seed: setup.scenario.run.seed,
+            far_field: far_field.as_ref(),
+            reader: &setup.reader,
+        };
+        let count = setup.scenario.run.trials;
+        progress.stage("trials", count);
+        let workers = setup.workers(rayon::current_num_threads());
+        let trials = run(machine, count, workers, progress);
+        let shown = shown_trial(&setup, &trials, far_field.as_ref());
+        (trials, Some(shown))
     };
-    progress.stage("trials", count);
-    let trials = run(
-        machine,
-        count,
-        setup.workers(rayon::current_num_threads()),
-        progress,
-    );
-    progress.stage("predictions and lobes", 3);
-    let statistics: Vec<(Figure, Summary)> = Figure::ALL
-        .into_iter()
-        .map(|figure| {
-            let values: Vec<Option<f64>> = trials
-                .trials
-                .iter()
-                .map(|trial| trial.figures.get(figure))
-                .collect();
-            (figure, Summary::of(&values, undefined(figure)))
-        })
-        .collect();
+    progress.stage("predictions and lobes", 2);
     let mut workspace = setup.reader.workspace();
     let long_exposure = setup
         .reader
         .read(&trials.mean_map, trials.mean_power_w, &mut workspace);
-    let shown = shown_trial(&setup, &trials, far_field.as_ref());
-    progress.advance(1);
-    let (predicted, alone) = predictions(&setup);
-    progress.advance(1);
-    let lobes = brightest(&setup.array, setup.grid.width_m());
-    progress.advance(1);
-    drop(far_field);
+    let statistics = statistics(&setup, &trials, &long_exposure.figures);
+    let ((predicted, alone), lobes) = rayon::join(
+        || {
+            let predictions = predictions(&setup);
+            progress.advance(1);
+            predictions
+        },
+        || {
+            let lobes = brightest(&setup.array, setup.grid.width_m());
+            progress.advance(1);
+            lobes
+        },
+    );
     let verdict = judge(
         &setup.scenario.require,
         &trials.trials,
@@ -146,6 +143,38 @@ pub fn assess(setup: Setup, progress: &dyn Progress) -> Outcome {
     };
     outcome.notes = super::notes::of(&outcome);
     outcome
+}
+
+/// The closed form's mean map in the place of trials.
+fn means(setup: &Setup, mean_map: Map) -> Trials {
+    let moments = Moments::of(&setup.scenario.errors);
+    Trials {
+        trials: Vec::new(),
+        mean_power_w: setup.array.power_w() * moments.mean_square,
+        mean_map,
+    }
+}
+
+/// Statistics of every figure over the trials; in closed form the means that the mean map holds.
+fn statistics(setup: &Setup, trials: &Trials, of_mean_map: &Figures) -> Vec<(Figure, Summary)> {
+    let summary = |figure: Figure| {
+        if setup.closed_form.is_some() {
+            return Summary {
+                mean: of_mean_map.get(figure).filter(|_| LINEAR.contains(&figure)),
+                ..Summary::default()
+            };
+        }
+        let values: Vec<Option<f64>> = trials
+            .trials
+            .iter()
+            .map(|trial| trial.figures.get(figure))
+            .collect();
+        Summary::of(&values, undefined(figure))
+    };
+    Figure::ALL
+        .into_iter()
+        .map(|figure| (figure, summary(figure)))
+        .collect()
 }
 
 /// What an undefined value of a figure means in statistics.

@@ -40,10 +40,16 @@ pub fn of(outcome: &Outcome) -> Vec<String> {
                 .to_string(),
         );
     }
+    if setup.closed_form.is_some() {
+        notes.push(
+            "Means in closed form: no trial was run. The long exposure is the mean map; means over trials are known for Strehl ratio, aim irradiance, radiated and bucket power, spreads and percentiles for none."
+                .to_string(),
+        );
+    }
     if setup.scenario.run.method == MethodChoice::Auto {
         notes.push(format!(
             "Method \"{}\" was chosen automatically.",
-            setup.choice.method().name()
+            setup.method()
         ));
     }
     notes

@@ -4,11 +4,13 @@
 use crate::array::Array;
 use crate::error::ScenarioError;
 use crate::farfield::choose::{Choice, MEMORY_LIMIT_BYTES, Refusal, Task, choose};
+use crate::farfield::closed_form::mean_map;
 use crate::farfield::pattern::clipping_loss;
 use crate::farfield::{Grid, Map};
 use crate::figures::{Reader, Reading};
 use crate::perturb::TrialErrors;
-use crate::scenario::{Errors, Figure, Layout, Scenario, Window};
+use crate::scenario::names::Named;
+use crate::scenario::{Errors, Figure, Layout, MethodChoice, Scenario, Statistic, Window};
 
 /// Most pixels a side that an automatic window takes for the 80 % circle.
 const MOST_AUTO_PIXELS: usize = 2047;
@@ -28,7 +30,7 @@ pub struct Setup {
     pub array: Array,
     /// Grid of the map.
     pub grid: Grid,
-    /// How the far field is computed.
+    /// How the far field of a trial is computed; with `closed_form`, that of the mean field.
     pub choice: Choice,
     /// Reads figures, with the array without errors as the reference.
     pub reader: Reader,
@@ -36,6 +38,8 @@ pub struct Setup {
     pub ideal_map: Map,
     /// Its figures.
     pub ideal: Reading,
+    /// The mean map, where means in closed form are asked for and no trials.
+    pub closed_form: Option<Map>,
 }
 
 impl Setup {
@@ -47,6 +51,9 @@ impl Setup {
     pub fn new(scenario: Scenario) -> Result<Setup, ScenarioError> {
         let array = Array::new(&scenario)?;
         refuse_wild_tilts(&scenario, &array)?;
+        if scenario.run.method == MethodChoice::ClosedForm {
+            refuse_beyond_closed_form(&scenario, &array)?;
+        }
         if clipping_loss(&array.element) > 1.0 - LEAST_PASSED {
             return Err(scenario.error(
                 "array.element.beam_radius",
@@ -61,7 +68,16 @@ impl Setup {
             }
             Window::Auto => automatic_window(&scenario, &array, pixel_m)?,
         };
+        let closed_form = match scenario.run.method {
+            MethodChoice::ClosedForm => Some(
+                mean_map(&array, &scenario.errors, ideal_map.grid).map_err(|refusal| {
+                    scenario.error("run.window", refusal.found, refusal.advice)
+                })?,
+            ),
+            _ => None,
+        };
         let setup = Setup {
+            closed_form,
             grid: ideal_map.grid,
             scenario,
             array,
@@ -80,6 +96,15 @@ impl Setup {
         let filled = array.power_w() * array.envelope_area_m2()
             / (array.wavelength_m * array.range_m).powi(2);
         self.ideal_map.aim_w_m2() / filled
+    }
+
+    /// Name of the method.
+    pub fn method(&self) -> &'static str {
+        if self.closed_form.is_some() {
+            MethodChoice::ClosedForm.name()
+        } else {
+            self.choice.method().name()
+        }
     }
 
     /// Workers that fit in memory, of `threads`.
@@ -123,6 +148,55 @@ impl Setup {
         }
         Ok(())
     }
+}
+
+/// Figures whose mean over trials is the figure of the mean map.
+pub const LINEAR: [Figure; 4] = [
+    Figure::Strehl,
+    Figure::AimIrradiance,
+    Figure::RadiatedPower,
+    Figure::BucketPower,
+];
+
+/// Most elements that the closed form lists when each points elsewhere.
+const MOST_LISTED: usize = 1_000_000;
+
+/// Refuse what the closed form cannot say.
+fn refuse_beyond_closed_form(scenario: &Scenario, array: &Array) -> Result<(), ScenarioError> {
+    let require = &scenario.require;
+    if require.statistic == Statistic::Trials && !require.bounds.is_empty() {
+        return Err(scenario.error(
+            "require.statistic",
+            "bounds on single trials, with run.method = \"closed_form\"",
+            "the closed form knows means only: use statistic = \"mean\" or \"long_exposure\", or another method",
+        ));
+    }
+    let beyond = require
+        .bounds
+        .iter()
+        .find(|bound| require.statistic == Statistic::Mean && !LINEAR.contains(&bound.figure));
+    if let Some(bound) = beyond {
+        return Err(scenario.error(
+            &format!("require.{}", bound.figure.name()),
+            "a bound on the mean of this figure, with run.method = \"closed_form\"",
+            format!(
+                "the closed form knows the means of {} only: use statistic = \"long_exposure\", or another method",
+                LINEAR.map(Figure::name).join(", ")
+            ),
+        ));
+    }
+    if array.len() > MOST_LISTED && array.largest_tilt_rad() > 0.0 {
+        let key = match scenario.array.layout {
+            Layout::Table { .. } => "array.table",
+            _ => "target.focus",
+        };
+        return Err(scenario.error(
+            key,
+            format!("{} elements that each point elsewhere, with run.method = \"closed_form\"", array.len()),
+            format!("with static tilts the closed form holds at most {MOST_LISTED} elements: focus at the range, or take method = \"auto\""),
+        ));
+    }
+    Ok(())
 }
 
 /// Refuse tilts that throw the elements' beams so far off that nothing combines, and
@@ -175,8 +249,14 @@ fn without_errors(
         scenario.error(key, refusal.found, refusal.advice)
     };
     let method = scenario.run.method;
-    let of_trials = Task::of_trials(grid, &scenario.errors);
-    let choice = choose(array, of_trials, method).map_err(refused)?;
+    let (task, method) = match method {
+        MethodChoice::ClosedForm => {
+            let mean = Task::mean_field(grid, scenario.errors.jitter_rad.rms());
+            (mean, MethodChoice::Auto)
+        }
+        method => (Task::of_trials(grid, &scenario.errors), method),
+    };
+    let choice = choose(array, task, method).map_err(refused)?;
     let still = choose(array, Task::still(grid), method).map_err(refused)?;
     let mut map = Map::dark(grid);
     still
