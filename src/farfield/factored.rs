@@ -45,16 +45,18 @@ pub struct Factored<'a> {
 
 /// What is prepared for the sites.
 enum Prepared<'a> {
-    Lattice {
-        sites: &'a LatticeSites,
-        amplitude: f64,
-        taper_per_m2: f64,
-        bands: Vec<Band>,
-        columns: [Columns; 2],
-        /// Sums along rows for the array without errors, once they are needed.
-        running: OnceLock<[RunningColumns; 2]>,
-    },
+    Lattice(Box<OnLattice<'a>>),
     List(Box<List>),
+}
+
+/// A lattice with its columns' places on the grid.
+struct OnLattice<'a> {
+    sites: &'a LatticeSites,
+    light: Light,
+    bands: Vec<Band>,
+    columns: [Columns; 2],
+    /// Sums along rows for the array without errors, once they are needed.
+    running: OnceLock<[RunningColumns; 2]>,
 }
 
 /// Elements of a list with their places on the grid.
@@ -98,10 +100,14 @@ impl<'a> Factored<'a> {
                 sites,
                 amplitude,
                 taper_per_m2,
-            } => Prepared::Lattice {
+            } => Prepared::Lattice(Box::new(OnLattice {
                 sites,
-                amplitude: *amplitude,
-                taper_per_m2: *taper_per_m2,
+                light: Light {
+                    amplitude: *amplitude,
+                    taper_per_m2: *taper_per_m2,
+                    wavenumber: array.wavenumber(),
+                    defocus_per_m: array.defocus_per_m,
+                },
                 bands: bands(sites),
                 columns: [0, 1].map(|parity| {
                     let x_m: Vec<f64> = (0..sites.columns)
@@ -110,7 +116,7 @@ impl<'a> Factored<'a> {
                     Columns::new(&axis, &x_m)
                 }),
                 running: OnceLock::new(),
-            },
+            })),
             Sites::List(_) => Prepared::List(Box::new(List::new(array, &axis))),
         };
         let theta: Vec<f64> = grid.axis_m().iter().map(|u| u / array.range_m).collect();
@@ -203,34 +209,13 @@ impl Worker for FactoredWorker<'_> {
         let common = trial.common_tilt_rad();
         self.grids.fill(Complex64::default());
         let radiated = match &factored.sites {
-            Prepared::Lattice {
-                sites,
-                amplitude,
-                taper_per_m2,
-                bands,
-                columns,
-                running,
-            } => {
-                let light = Light {
-                    amplitude: *amplitude,
-                    taper_per_m2: *taper_per_m2,
-                    wavenumber: factored.array.wavenumber(),
-                    defocus_per_m: factored.array.defocus_per_m,
-                };
-                if trial.errors.is_none() && factored.expansion.monomials.len() == 1 {
-                    let running = running.get_or_init(|| {
-                        [0, 1].map(|parity| {
-                            let factors: Vec<Complex64> = (0..sites.columns)
-                                .map(|column| light.factor(sites.x_m(parity, column), 0.0))
-                                .collect();
-                            columns[parity].running(&factors)
-                        })
-                    });
-                    self.spread_still(sites, &light, running)
-                } else {
-                    self.spread_lattice(trial, common, sites, &light, bands, columns)
-                }
+            // One monomial: no element tilts, and the only term is the pattern itself.
+            Prepared::Lattice(lattice)
+                if trial.errors.is_none() && factored.expansion.monomials.len() == 1 =>
+            {
+                self.spread_still(lattice)
             }
+            Prepared::Lattice(lattice) => self.spread_lattice(trial, common, lattice),
             Prepared::List(list) => self.spread_list(trial, common, list),
         };
         self.transform(common);
@@ -270,12 +255,16 @@ impl FactoredWorker<'_> {
         &mut self,
         trial: TrialErrors<'_>,
         common: (f64, f64),
-        sites: &LatticeSites,
-        light: &Light,
-        bands: &[Band],
-        columns: &[Columns; 2],
+        lattice: &OnLattice<'_>,
     ) -> Radiated {
         let factored = self.factored;
+        let OnLattice {
+            sites,
+            light,
+            bands,
+            columns,
+            ..
+        } = lattice;
         let recipe = Recipe::new(trial);
         let tilted = light.defocus_per_m.abs() > 0.0;
         let plain = !tilted && light.taper_per_m2 <= 0.0 && common == (0.0, 0.0);
@@ -347,12 +336,16 @@ impl FactoredWorker<'_> {
     }
 
     /// Spread a lattice without errors, row by row whatever the number of its columns.
-    fn spread_still(
-        &mut self,
-        sites: &LatticeSites,
-        light: &Light,
-        running: &[RunningColumns; 2],
-    ) -> Radiated {
+    fn spread_still(&mut self, lattice: &OnLattice<'_>) -> Radiated {
+        let (sites, light) = (lattice.sites, &lattice.light);
+        let running = lattice.running.get_or_init(|| {
+            [0, 1].map(|parity| {
+                let factors: Vec<Complex64> = (0..sites.columns)
+                    .map(|column| light.factor(sites.x_m(parity, column), 0.0))
+                    .collect();
+                lattice.columns[parity].running(&factors)
+            })
+        });
         let axis = &self.factored.axis;
         let grid = &mut self.grids[..axis.cells * axis.cells];
         for row in &sites.rows {
