@@ -10,6 +10,7 @@
 
 use super::pattern::{Wavefront, element_strips};
 use crate::array::Array;
+use multiversion::multiversion;
 use num_complex::Complex64;
 use std::f64::consts::PI;
 
@@ -158,15 +159,41 @@ impl TiltExpansion {
                     .map(move |basis| row.iter().zip(basis).map(|(c, b)| c * b).sum())
             })
             .collect();
-        for (line, basis) in values
-            .chunks_exact_mut(theta_y.len())
-            .zip(along.chunks_exact(self.nodes))
-        {
-            line.fill(Complex64::default());
-            for (order, part) in basis.iter().zip(half_way.chunks_exact(theta_y.len())) {
-                for (value, part) in line.iter_mut().zip(part) {
-                    *value += order * part;
-                }
+        combine(values, theta_y.len(), &along, &half_way, self.nodes);
+    }
+}
+
+/// Each line of `values`, `width` long: the sum of the rows of `parts` under its `nodes` weights.
+#[multiversion(targets(
+    "x86_64+avx2+fma+avx512f+avx512bw+avx512dq+avx512vl",
+    "x86_64+avx2+fma"
+))]
+fn combine(
+    values: &mut [Complex64],
+    width: usize,
+    weights: &[f64],
+    parts: &[Complex64],
+    nodes: usize,
+) {
+    for (line, weights) in values
+        .chunks_exact_mut(width)
+        .zip(weights.chunks_exact(nodes))
+    {
+        line.fill(Complex64::default());
+        // Four rows at a time, so that a line is read and written a quarter as often.
+        for (weights, parts) in weights.chunks(4).zip(parts.chunks(4 * width)) {
+            let row = |index: usize| {
+                let start = index.min(weights.len() - 1) * width;
+                &parts[start..start + width]
+            };
+            let weight = |index: usize| weights.get(index).copied().unwrap_or(0.0);
+            let (a, b, c, d) = (row(0), row(1), row(2), row(3));
+            let (wa, wb, wc, wd) = (weight(0), weight(1), weight(2), weight(3));
+            for (index, value) in line.iter_mut().enumerate() {
+                value.re +=
+                    (wa * a[index].re + wb * b[index].re) + (wc * c[index].re + wd * d[index].re);
+                value.im +=
+                    (wa * a[index].im + wb * b[index].im) + (wc * c[index].im + wd * d[index].im);
             }
         }
     }

@@ -75,11 +75,13 @@ impl EncircledPicture<'_> {
         canvas.text(&name, below, Anchor::Middle, BODY, TEXT);
         self.labels(&mut canvas, &frame, &marked);
 
-        let entries = [
+        let mut entries = vec![
             (Sample::Line(IDEAL), "without errors".to_string()),
             (Sample::Line(MEAN), "long exposure".to_string()),
-            (Sample::Area(BAND), "5 to 95 % of the trials".to_string()),
         ];
+        if self.p05.iter().any(|share| share.is_finite()) {
+            entries.push((Sample::Area(BAND), "5 to 95 % of the trials".to_string()));
+        }
         let from = (frame.rect.left, HEIGHT as f64 - 24.0);
         legend(&mut canvas, from, frame.rect.width(), &entries);
         canvas.into_png()
