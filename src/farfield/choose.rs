@@ -59,6 +59,8 @@ pub struct Choice {
     pub task: Task,
     /// How it is done.
     plan: Plan,
+    /// Why this method.
+    pub why: &'static str,
     /// Bytes held once.
     pub shared_bytes: f64,
     /// Bytes held by each worker.
@@ -68,6 +70,9 @@ pub struct Choice {
     /// Seconds a trial, on one such core.
     pub trial_s: f64,
 }
+
+/// The reason of a method that the scenario names.
+const AS_ASKED: &str = "as run.method asks";
 
 /// What a method needs to know in advance.
 #[derive(Debug, Clone)]
@@ -182,14 +187,16 @@ pub fn choose(array: &Array, task: Task, requested: MethodChoice) -> Result<Choi
             })?
             .if_it_fits(elements),
         MethodChoice::Auto => {
+            let because = |why, choice| Choice { why, ..choice };
             if let Some(choice) = factored(array, task).filter(Choice::fits) {
-                return Ok(choice);
+                return Ok(because("all elements share one pattern", choice));
             }
             let sampled = sampled(array, task);
             if sampled.fits() {
-                return Ok(sampled);
+                return Ok(because("the tilts are too large for factored", sampled));
             }
-            direct(array, task).if_it_fits(elements)
+            let direct = direct(array, task).if_it_fits(elements)?;
+            Ok(because("nothing faster fits in memory", direct))
         }
         MethodChoice::ClosedForm => Err(Refusal {
             found: "`closed_form` for a map of trials".to_string(),
@@ -248,6 +255,7 @@ fn direct(array: &Array, task: Task) -> Choice {
     Choice {
         task,
         plan: Plan::Direct,
+        why: AS_ASKED,
         shared_bytes: 48.0 * elements,
         worker_bytes: pixels * (16.0 * pixels + 16.0 * 512.0) + 33.0 * elements,
         setup_s: 0.0,
@@ -274,6 +282,7 @@ fn sampled(array: &Array, task: Task) -> Choice {
         setup_s: cells * COVER_S * if uniform { 1.0 } else { 5.0 },
         trial_s: transforms * transform_s(plan.length) + cells * CELL_S,
         plan: Plan::Sampled(plan),
+        why: AS_ASKED,
     }
 }
 
@@ -299,5 +308,6 @@ fn factored(array: &Array, task: Task) -> Option<Choice> {
         trial_s: elements * (DRAW_S + terms * spread_s)
             + terms * ((cells + pixels) * transform_s(axis.length) + 6e-9 * pixels * pixels),
         plan: Plan::Factored(expansion),
+        why: AS_ASKED,
     })
 }

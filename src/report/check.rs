@@ -143,7 +143,15 @@ pub fn describe(setup: &Setup, threads: usize, pace: f64) -> String {
     );
     fact(
         "method",
-        format!("{}: {}", setup.method(), setup.choice.description()),
+        match setup.closed_form {
+            Some(_) => "closed_form: means only, no trials".to_string(),
+            None => format!(
+                "{}: {} ({})",
+                setup.method(),
+                setup.choice.description(),
+                setup.choice.why
+            ),
+        },
     );
     fact(
         "assess will take",
