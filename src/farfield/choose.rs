@@ -295,6 +295,12 @@ fn factored(array: &Array, task: Task) -> Option<Choice> {
         Sites::Lattice { .. } => 1.0e-9,
         Sites::List(_) => 60e-9,
     };
+    // A tilt of the whole array has every term evaluated anew.
+    let each_pixel_s = if task.common_jitter_rad > 0.0 {
+        3e-9 + 0.7e-9 * expansion.nodes() as f64
+    } else {
+        3e-9
+    };
     let listed_bytes = match array.sites {
         Sites::Lattice { .. } => 0.0,
         Sites::List(_) => 130.0 * elements,
@@ -306,7 +312,8 @@ fn factored(array: &Array, task: Task) -> Option<Choice> {
             + 64.0 * terms * cells,
         setup_s: 1e-3 + 30e-9 * terms * pixels * pixels,
         trial_s: elements * (DRAW_S + terms * spread_s)
-            + terms * ((cells + pixels) * transform_s(axis.length) + 6e-9 * pixels * pixels),
+            + terms
+                * ((cells + pixels) * transform_s(axis.length) + each_pixel_s * pixels * pixels),
         plan: Plan::Factored(expansion),
         why: AS_ASKED,
     })

@@ -129,6 +129,11 @@ impl TiltExpansion {
         self.polynomials.len()
     }
 
+    /// Chebyshev points per axis that each fₜ takes.
+    pub fn nodes(&self) -> usize {
+        self.nodes
+    }
+
     /// fₜ at every pair of directions, `[x][y]`, into `values`.
     pub fn evaluate(
         &self,

@@ -11,28 +11,38 @@ use crate::study::requirement::meets;
 use crate::study::setup::Setup;
 use serde_json::{Value, json};
 
-/// Seconds that the pictures and tables of a study take on the reference machine.
-const PICTURES_S: f64 = 0.4;
+/// Seconds of one core that the pictures and tables of a study take on the reference machine.
+const PICTURES_S: f64 = 0.3;
 
 /// Seconds that `assess` will take on `threads` threads of a machine of this `pace`.
 fn run_s(setup: &Setup, threads: usize, pace: f64) -> f64 {
-    let workers = setup.workers(threads) as f64;
-    let trials = setup.scenario.run.trials as f64 * (setup.choice.trial_s + setup.reading_s());
-    pace * (setup.choice.setup_s + trials / workers + PICTURES_S)
+    let trial_s = setup.choice.trial_s + setup.reading_s();
+    let trials = trials(setup) * trial_s / setup.workers(threads) as f64;
+    let afterwards = (setup.predictions_s() + PICTURES_S) / threads as f64;
+    pace * (setup.choice.setup_s + trials + afterwards)
+}
+
+/// Trials that will run.
+fn trials(setup: &Setup) -> f64 {
+    match setup.closed_form {
+        Some(_) => 0.0,
+        None => setup.scenario.run.trials as f64,
+    }
 }
 
 /// Bytes that `assess` will hold at its peak.
 fn run_bytes(setup: &Setup, threads: usize) -> f64 {
     let workers = setup.workers(threads) as f64;
-    let kept = setup.scenario.run.trials as f64 * 1100.0;
-    30e6 + setup.choice.shared_bytes + workers * setup.trial_bytes() + kept
+    // A trial keeps its figures and its encircled curve.
+    let kept = trials(setup) * 1100.0;
+    20e6 + setup.choice.shared_bytes + workers * setup.trial_bytes() + kept
 }
 
 /// The same as data.
 pub fn run_facts(setup: &Setup, threads: usize, pace: f64) -> Value {
     json!({
         "method": setup.method(),
-        "trials": setup.scenario.run.trials,
+        "trials": trials(setup),
         "threads": threads,
         "window_m": setup.grid.width_m(),
         "pixels": setup.grid.pixels,
@@ -158,7 +168,7 @@ pub fn describe(setup: &Setup, threads: usize, pace: f64) -> String {
         format!(
             "about {} for {} trials on {} threads, {:.0} MB of memory",
             duration(run_s(setup, threads, pace)),
-            scenario.run.trials,
+            trials(setup),
             threads,
             (run_bytes(setup, threads) / 1e6).ceil()
         ),

@@ -203,7 +203,8 @@ fn limits(outcome: &Outcome) -> Vec<String> {
         Comparison::AtMost => -1.0,
     };
     sources.sort_by(|a, b| (sign * a.1).total_cmp(&(sign * b.1)));
-    sources.retain(|(_, value)| sign * (ideal - value) > 1e-6 * ideal.abs());
+    // Only losses that the digits shown can tell.
+    sources.retain(|(_, value)| sign * (ideal - value) > 0.0 && show(*value) != show(ideal));
     if sources.is_empty() {
         return vec![format!(
             "No error takes {} closer to its bound than its {} without errors.",

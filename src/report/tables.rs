@@ -55,8 +55,10 @@ pub fn encircled(outcome: &Outcome) -> Vec<u8> {
     ];
     csv(
         &header,
-        (0..band.radius_m.len())
-            .map(|row| columns.iter().map(|column| Some(column[row])).collect()),
+        (0..band.radius_m.len()).map(|row| {
+            let defined = |column: &&Vec<f64>| Some(column[row]).filter(|share| share.is_finite());
+            columns.iter().map(defined).collect()
+        }),
     )
 }
 

@@ -326,11 +326,19 @@ impl Scenario {
 impl Errors {
     /// Whether nothing is in error.
     pub fn is_none(&self) -> bool {
-        [&self.piston_rad, &self.jitter_rad, &self.common_jitter_rad]
-            .iter()
-            .all(|part| part.rms() <= 0.0)
-            && self.dropout <= 0.0
-            && self.power_spread <= 0.0
+        self.sources() == 0
+    }
+
+    /// How many sources are not zero.
+    pub fn sources(&self) -> usize {
+        let present = [
+            self.piston_rad.rms() > 0.0,
+            self.jitter_rad.rms() > 0.0,
+            self.common_jitter_rad.rms() > 0.0,
+            self.dropout > 0.0,
+            self.power_spread > 0.0,
+        ];
+        present.into_iter().filter(|present| *present).count()
     }
 
     /// No errors at all.

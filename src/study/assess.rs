@@ -199,9 +199,14 @@ fn shown_trial(setup: &Setup, trials: &Trials, far_field: &dyn FarField) -> Show
     let mut ascending: Vec<f64> = (0..trials.trials.len()).map(key).collect();
     ascending.sort_by(f64::total_cmp);
     let median = quantile(&ascending, 0.5).unwrap_or(0.0);
-    let distance = |index: &usize| (key(*index) - median).abs();
+    let distance = |index: usize| (key(index) - median).abs();
+    let nearest = (0..trials.trials.len())
+        .map(distance)
+        .fold(f64::INFINITY, f64::min);
+    // The two middle ones of an even number tie but for rounding: the earlier is shown.
+    let tie = 1e-6 * median.abs();
     let index = (0..trials.trials.len())
-        .min_by(|a, b| distance(a).total_cmp(&distance(b)))
+        .find(|&index| distance(index) <= nearest + tie)
         .unwrap_or(0);
     let trial = trials.trials[index].trial;
     let errors = &setup.scenario.errors;

@@ -34,11 +34,16 @@ pub fn of(outcome: &Outcome) -> Vec<String> {
             notes.push(note);
         }
     }
-    if setup.scenario.target.bucket_diameter_m.is_none() {
-        notes.push(
+    match setup.scenario.target.bucket_diameter_m {
+        None => notes.push(
             "No bucket is stated (target.bucket_diameter), so bucket power, bucket fraction and beam quality are undefined."
                 .to_string(),
-        );
+        ),
+        Some(_) if setup.ideal.figures.get(Figure::BucketPower).is_none() => notes.push(
+            "The bucket is larger than the window (run.window), so bucket power, bucket fraction and beam quality are undefined."
+                .to_string(),
+        ),
+        Some(_) => {}
     }
     if setup.closed_form.is_some() {
         notes.push(

@@ -126,6 +126,15 @@ impl Setup {
         2.5e-4 + pixels * pixels * (20e-9 + 4e-9 * pixels.log2())
     }
 
+    /// Seconds of one core that the predictions and the lobes take on the reference machine.
+    pub fn predictions_s(&self) -> f64 {
+        let maps = 1.0 + self.scenario.errors.sources() as f64;
+        let pixels = self.grid.pixels as f64;
+        // A still far field, the scattered part on a grid of its own, and a reading.
+        let still_s = 2e-3 + 1e-7 * pixels * pixels;
+        maps * (8e-3 + still_s + self.reading_s()) + 30e-3
+    }
+
     fn refuse_undefined_bounds(&self) -> Result<(), ScenarioError> {
         for bound in &self.scenario.require.bounds {
             if self.ideal.figures.get(bound.figure).is_none() {
