@@ -5,13 +5,11 @@ mod common;
 use common::{Unwatched, array_of, map, scenario, setup, text};
 use facula::array::Array;
 use facula::farfield::Method;
-use facula::farfield::choose::prepare;
-use facula::perturb::{Draw, State};
+use facula::perturb::{Draw, State, TrialErrors};
 use facula::scenario::{Errors, Figure};
 use facula::study::assess::{Outcome, assess};
 use facula::study::setup::Setup;
-use facula::trials::power_w;
-use std::f64::consts::TAU;
+use std::f64::consts::PI;
 
 /// 37 trials are five batches, the last of five.
 fn study(method: &str) -> Setup {
@@ -58,9 +56,13 @@ fn told(outcome: &Outcome) -> Vec<(&'static str, String)> {
 
 #[test]
 fn any_number_of_threads_gives_the_same_bits() {
-    for (method, expected) in [("sampled", Method::Sampled), ("direct", Method::Direct)] {
+    for (method, expected) in [
+        ("auto", Method::Factored),
+        ("sampled", Method::Sampled),
+        ("direct", Method::Direct),
+    ] {
         let run = |threads| on_threads(threads, || told(&assess(study(method), &Unwatched)));
-        assert_eq!(study(method).choice.method, expected);
+        assert_eq!(study(method).choice.method(), expected);
         let alone = run(1);
         for threads in [2, 3, 7] {
             for (one, other) in alone.iter().zip(run(threads)) {
@@ -76,20 +78,24 @@ fn any_number_of_threads_gives_the_same_bits() {
 
 #[test]
 fn a_trial_computed_alone_equals_the_same_trial_in_the_run() {
-    for method in ["sampled", "direct"] {
+    for method in ["factored", "sampled", "direct"] {
         let outcome = assess(study(method), &Unwatched);
         let setup = &outcome.setup;
-        let far_field = prepare(&setup.choice, &setup.array, setup.grid, setup.tilts, 0.0);
+        let far_field = setup.choice.prepare(&setup.array);
         for trial in [0, 7, 8, 20, 36] {
-            let draw = Draw::of_trial(&setup.array, &setup.scenario.errors, 4, trial);
-            let map = map(far_field.as_ref(), &draw);
-            let power = power_w(&setup.array, &draw);
+            let errors = TrialErrors {
+                errors: &setup.scenario.errors,
+                seed: 4,
+                trial,
+            };
+            let (map, radiated) = map(far_field.as_ref(), errors);
             let reading = setup
                 .reader
-                .read(&map, power, &mut setup.reader.workspace());
+                .read(&map, radiated.power_w, &mut setup.reader.workspace());
             let in_run = &outcome.trials.trials[trial as usize];
             assert_eq!(in_run.trial, trial);
-            assert_eq!(in_run.dark, draw.count(State::Dark));
+            let draw = Draw::of_trial(&setup.array, errors);
+            assert_eq!(in_run.dark, count(&draw, State::Dark));
             for figure in Figure::ALL {
                 let bits = |value: Option<f64>| value.map(f64::to_bits);
                 assert_eq!(
@@ -106,11 +112,25 @@ fn a_trial_computed_alone_equals_the_same_trial_in_the_run() {
 #[test]
 fn more_trials_leave_the_first_ones_as_they_were() {
     let run = |trials: u64| {
-        let mut setup = study("sampled");
+        let mut setup = study("auto");
         setup.scenario.run.trials = trials;
         format!("{:?}", &assess(setup, &Unwatched).trials.trials[..11])
     };
     assert!(run(11) == run(37));
+}
+
+fn count(draw: &Draw, state: State) -> usize {
+    draw.state.iter().filter(|&&each| each == state).count()
+}
+
+/// Errors of trial 11 of seed 7.
+fn eleventh(array: &Array, errors: &Errors) -> Draw {
+    let trial = TrialErrors {
+        errors,
+        seed: 7,
+        trial: 11,
+    };
+    Draw::of_trial(array, trial)
 }
 
 fn elements(errors: &str) -> (Array, Errors) {
@@ -130,7 +150,7 @@ fn changing_or_stopping_one_error_leaves_the_draws_of_the_others_bit_for_bit() {
             "piston = \"{piston} rad\"\njitter = \"{jitter} urad\"\ndropout = {dropout}\n\
              power_spread = {spread}\ncommon_jitter = \"{common} urad\""
         ));
-        Draw::of_trial(&array, &errors, 7, 11)
+        eleventh(&array, &errors)
     };
     let bits = |values: &[f64]| {
         values
@@ -139,7 +159,7 @@ fn changing_or_stopping_one_error_leaves_the_draws_of_the_others_bit_for_bit() {
             .collect::<Vec<_>>()
     };
     let base = draw(0.5, 2.0, 0.2, 0.3, 0.0);
-    let dark = base.count(State::Dark);
+    let dark = count(&base, State::Dark);
     assert!(dark > 2 && dark < 30, "{dark}");
     for piston in [0.0, 0.25, 1.0] {
         let other = draw(piston, 2.0, 0.2, 0.3, 0.0);
@@ -189,7 +209,7 @@ fn changing_or_stopping_one_error_leaves_the_draws_of_the_others_bit_for_bit() {
     assert_eq!(common.0.to_bits(), alone.0.to_bits());
     assert_eq!(common.1.to_bits(), alone.1.to_bits());
     let (array, errors) = elements("dropout = 0.2\ndropped = \"unlocked\"");
-    let unlocked = Draw::of_trial(&array, &errors, 7, 11);
+    let unlocked = eleventh(&array, &errors);
     for n in 0..61 {
         let out = unlocked.state[n] == State::Unlocked;
         assert_eq!(
@@ -197,6 +217,6 @@ fn changing_or_stopping_one_error_leaves_the_draws_of_the_others_bit_for_bit() {
             base.state[n] == State::Dark,
             "the same luck, dark or unlocked"
         );
-        assert!(!out || (0.0..TAU).contains(&unlocked.phase_rad[n]));
+        assert!(!out || unlocked.phase_rad[n].abs() <= PI);
     }
 }

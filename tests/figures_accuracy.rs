@@ -6,14 +6,13 @@
 
 mod common;
 
-use common::{Directions, array_of, assert_close, bisect, gauss_nodes, greatest, map, scenario};
-use common::{direct, text};
-use facula::farfield::Grid;
-use facula::farfield::choose::{Tilts, choose, prepare};
+use common::{Anywhere, array_of, assert_close, bisect, gauss_nodes, greatest, map, scenario};
+use common::{prepared, text};
+use facula::farfield::choose::Task;
+use facula::farfield::{Direct, Grid};
 use facula::figures::{Figures, Reader};
-use facula::perturb::Draw;
+use facula::perturb::TrialErrors;
 use facula::scenario::{Figure, MethodChoice, Scenario};
-use facula::trials::power_w;
 use rayon::prelude::*;
 use std::f64::consts::TAU;
 
@@ -62,19 +61,23 @@ struct Read {
     shares: Vec<f64>,
 }
 
+/// The trial that every check takes.
+fn trial(scenario: &Scenario) -> TrialErrors<'_> {
+    TrialErrors {
+        errors: &scenario.errors,
+        seed: 6,
+        trial: 2,
+    }
+}
+
 /// All figures, and the shares within [`RADII`], at four samples a spot.
-fn read(scenario: &Scenario, draw: &Draw, method: MethodChoice) -> Read {
+fn read(scenario: &Scenario, method: MethodChoice) -> Read {
     let array = array_of(scenario);
     let spot_m = array.spot_m();
     let grid = Grid::covering(16.0 * spot_m, spot_m / 4.0);
-    let tilts = Tilts {
-        jitter_rad: scenario.errors.jitter_rad.rms(),
-        common_jitter_rad: scenario.errors.common_jitter_rad.rms(),
-    };
-    let choice =
-        choose(&array, grid, tilts, method).unwrap_or_else(|refusal| panic!("{refusal:?}"));
-    let map = map(prepare(&choice, &array, grid, tilts, 0.0).as_ref(), draw);
-    let power = power_w(&array, draw);
+    let task = Task::of_trials(grid, &scenario.errors);
+    let (map, radiated) = map(prepared(&array, task, method).as_ref(), trial(scenario));
+    let power = radiated.power_w;
     let reading = |diameter_m: f64| {
         let reader = Reader::new(&array, grid, Some(diameter_m));
         reader.read(&map, power, &mut reader.workspace()).figures
@@ -92,7 +95,7 @@ fn read(scenario: &Scenario, draw: &Draw, method: MethodChoice) -> Read {
 }
 
 /// Power of a draw within each of [`RADII`], in shares of P.
-fn exact_shares(directions: &Directions<'_>, draw: &Draw, spot_m: f64, power: f64) -> Vec<f64> {
+fn exact_shares(directions: &Anywhere<'_>, spot_m: f64, power: f64) -> Vec<f64> {
     let mut from = 0.0;
     let mut sum = 0.0;
     RADII
@@ -107,7 +110,7 @@ fn exact_shares(directions: &Directions<'_>, draw: &Draw, spot_m: f64, power: f6
                     (0..azimuths)
                         .map(|index| {
                             let (sin, cos) = (TAU * index as f64 / azimuths as f64).sin_cos();
-                            weight * r * directions.of(draw, r * cos, r * sin)
+                            weight * r * directions.at(r * cos, r * sin)
                         })
                         .sum::<f64>()
                         * TAU
@@ -121,53 +124,39 @@ fn exact_shares(directions: &Directions<'_>, draw: &Draw, spot_m: f64, power: f6
 }
 
 /// The highest point of a draw: the brightest of a coarse net, then along u and v in turn.
-fn exact_peak(directions: &Directions<'_>, draw: &Draw, spot_m: f64) -> (f64, f64, f64) {
+fn exact_peak(directions: &Anywhere<'_>, spot_m: f64) -> (f64, f64, f64) {
     let net = (-40..=40).flat_map(|j| (-40..=40).map(move |i| (f64::from(i), f64::from(j))));
     let (mut u, mut v) = net
         .map(|(i, j)| (0.1 * i * spot_m, 0.1 * j * spot_m))
-        .max_by(|a, b| {
-            directions
-                .of(draw, a.0, a.1)
-                .total_cmp(&directions.of(draw, b.0, b.1))
-        })
+        .max_by(|a, b| directions.at(a.0, a.1).total_cmp(&directions.at(b.0, b.1)))
         .unwrap_or((0.0, 0.0));
     for _ in 0..20 {
-        u = greatest(
-            |u| directions.of(draw, u, v),
-            u - 0.1 * spot_m,
-            u + 0.1 * spot_m,
-        )
-        .0;
-        v = greatest(
-            |v| directions.of(draw, u, v),
-            v - 0.1 * spot_m,
-            v + 0.1 * spot_m,
-        )
-        .0;
+        u = greatest(|u| directions.at(u, v), u - 0.1 * spot_m, u + 0.1 * spot_m).0;
+        v = greatest(|v| directions.at(u, v), v - 0.1 * spot_m, v + 0.1 * spot_m).0;
     }
-    (u, v, directions.of(draw, u, v))
+    (u, v, directions.at(u, v))
 }
 
 #[test]
 fn power_in_circles_of_a_quarter_to_eight_spots_is_read_to_a_thousandth() {
     for (name, scenario) in cases() {
         let array = array_of(&scenario);
-        let draw = Draw::of_trial(&array, &scenario.errors, 6, 2);
         let spot_m = array.spot_m();
-        let directions = Directions::new(&array, 9.0 * spot_m);
-        let exact = exact_shares(&directions, &draw, spot_m, power_w(&array, &draw));
+        let directions = Anywhere::new(&array, trial(&scenario), 9.0 * spot_m);
+        let exact = exact_shares(&directions, spot_m, directions.power_w());
         for (method, choice, tolerance) in [
             ("direct", MethodChoice::Direct, 1.5e-4),
+            ("factored", MethodChoice::Factored, 1.5e-4),
             ("sampled", MethodChoice::Sampled, 8e-4),
         ] {
-            let found = read(&scenario, &draw, choice).shares;
+            let found = read(&scenario, choice).shares;
             for ((radius, found), expected) in RADII.iter().zip(found).zip(&exact) {
                 assert_close(
                     &format!("{name}, {method}: share within {radius} spots"),
                     found,
                     *expected,
                     tolerance,
-                    "1e-3 is promised; measured up to 6e-5 for direct, 3e-4 for sampled",
+                    "1e-3 is promised; measured up to 6e-5 for direct and factored, 3e-4 for sampled",
                 );
             }
         }
@@ -179,14 +168,13 @@ fn peaks_and_widths_are_read_to_a_thousandth() {
     let reason = "1e-3 is promised; measured up to 2.1e-4";
     for (name, scenario) in cases() {
         let array = array_of(&scenario);
-        let draw = Draw::of_trial(&array, &scenario.errors, 6, 2);
         let spot_m = array.spot_m();
-        let directions = Directions::new(&array, 9.0 * spot_m);
-        let (u, v, peak) = exact_peak(&directions, &draw, spot_m);
+        let directions = Anywhere::new(&array, trial(&scenario), 9.0 * spot_m);
+        let (u, v, peak) = exact_peak(&directions, spot_m);
         // Distance from the peak to half of it, along an azimuth.
         let ray = |azimuth: f64| {
             let (sin, cos) = azimuth.sin_cos();
-            let below = |r: f64| directions.of(&draw, u + r * cos, v + r * sin) - 0.5 * peak;
+            let below = |r: f64| directions.at(u + r * cos, v + r * sin) - 0.5 * peak;
             let step = 0.02 * spot_m;
             let out = (1..500)
                 .map(|n| f64::from(n) * step)
@@ -203,9 +191,10 @@ fn peaks_and_widths_are_read_to_a_thousandth() {
         let quarter = TAU / 4.0;
         for (method, choice) in [
             ("direct", MethodChoice::Direct),
+            ("factored", MethodChoice::Factored),
             ("sampled", MethodChoice::Sampled),
         ] {
-            let figures = read(&scenario, &draw, choice).figures;
+            let figures = read(&scenario, choice).figures;
             let check = |figure: Figure, expected: f64, scale: f64| {
                 let found = figures.get(figure).unwrap_or(f64::NAN);
                 assert_close(
@@ -217,7 +206,7 @@ fn peaks_and_widths_are_read_to_a_thousandth() {
                 );
             };
             check(Figure::PeakIrradiance, peak, peak);
-            check(Figure::AimIrradiance, directions.of(&draw, 0.0, 0.0), peak);
+            check(Figure::AimIrradiance, directions.at(0.0, 0.0), peak);
             check(Figure::Offset, u.hypot(v), spot_m);
             check(Figure::FwhmX, ray(0.0) + ray(2.0 * quarter), spot_m);
             check(Figure::FwhmY, ray(quarter) + ray(3.0 * quarter), spot_m);
@@ -231,18 +220,14 @@ fn peaks_and_widths_are_read_to_a_thousandth() {
 fn figures_at_the_default_sampling_are_those_of_a_map_eight_times_as_fine() {
     for (name, scenario) in cases() {
         let array = array_of(&scenario);
-        let draw = Draw::of_trial(&array, &scenario.errors, 6, 2);
         let spot_m = array.spot_m();
         let figures = |samples: f64| {
             let grid = Grid::covering(16.25 * spot_m, spot_m / samples);
-            let tilts = Tilts {
-                jitter_rad: 1e-6,
-                common_jitter_rad: 0.4e-6,
-            };
-            let map = map(&direct(&array, grid, tilts), &draw);
+            let task = Task::of_trials(grid, &scenario.errors);
+            let (map, radiated) = map(&Direct::new(&array, task), trial(&scenario));
             let reader = Reader::new(&array, grid, None);
             reader
-                .read(&map, power_w(&array, &draw), &mut reader.workspace())
+                .read(&map, radiated.power_w, &mut reader.workspace())
                 .figures
         };
         let (usual, fine) = (figures(4.0), figures(32.0));

@@ -8,11 +8,10 @@
 
 mod common;
 
-use common::{Directions, array_of, assert_close, gauss_nodes, scenario_in};
-use facula::farfield::choose::Tilts;
-use facula::farfield::{Grid, Map};
-use facula::perturb::Draw;
-use facula::scenario::Scenario;
+use common::{Directions, array_of, assert_close, gauss_nodes, prepared, scenario_in, still_map};
+use facula::farfield::Grid;
+use facula::farfield::choose::Task;
+use facula::scenario::{MethodChoice, Scenario};
 use num_complex::Complex64;
 use rayon::prelude::*;
 use std::f64::consts::TAU;
@@ -26,6 +25,13 @@ const ELEMENTS: [[f64; 6]; 4] = [
     [0.0023, 0.0083, 1.3, 2.0, -5e-6, 0.0],
 ];
 const SIZE_M: f64 = 0.005;
+
+/// Every method and its error over the peak.
+const METHODS: [(MethodChoice, f64); 3] = [
+    (MethodChoice::Direct, 1e-9),
+    (MethodChoice::Sampled, 2e-3),
+    (MethodChoice::Factored, 5e-6),
+];
 
 /// What the reference is told: numbers of the case, none of the program's.
 #[derive(Clone, Copy)]
@@ -226,40 +232,42 @@ fn the_direct_sum_is_the_whole_fresnel_integral_on_a_bench() {
 #[test]
 fn the_map_is_the_integral_with_rows_along_v_and_columns_along_u() {
     let folder = table(&ELEMENTS);
-    let optics = Optics {
-        wavelength_m: 1e-6,
-        range_m: 10.0,
-        inverse_focus_per_m: 1.0 / 12.0,
-        flat_facets: false,
-        waist_m: None,
-        obscuration: 0.0,
-    };
-    let array = array_of(&bench(folder.path(), "square", optics));
-    let grid = Grid {
-        pixels: 17,
-        pixel_m: 0.2e-3,
-    };
-    let none = Draw::none(array.len());
-    let maps: [Map; 2] = [
-        common::map(&common::direct(&array, grid, Tilts::default()), &none),
-        common::map(&common::sampled(&array, grid, Tilts::default(), 1.0), &none),
-    ];
-    let peak = maps[0]
-        .irradiance_w_m2
-        .iter()
-        .fold(0.0, |a: f64, &b| a.max(b));
-    for row in 0..17 {
-        for column in 0..17 {
-            let at = |index: usize| (index as f64 - 8.0) * grid.pixel_m;
-            let expected = by_integral("square", optics, at(column), at(row));
-            for (map, tolerance) in maps.iter().zip([1e-9, 2e-3]) {
-                assert_close(
-                    &format!("[{row}, {column}]"),
-                    map.at(row, column) / peak,
-                    expected / peak,
-                    tolerance,
-                    "direct: quadrature; sampled: its design",
-                );
+    // A focus at 12 m tilts the outer elements by almost λ/size: too much for `factored`.
+    for (focus_m, methods) in [(12.0, &METHODS[..2]), (10.2, &METHODS[..])] {
+        let optics = Optics {
+            wavelength_m: 1e-6,
+            range_m: 10.0,
+            inverse_focus_per_m: 1.0 / focus_m,
+            flat_facets: false,
+            waist_m: None,
+            obscuration: 0.0,
+        };
+        let array = array_of(&bench(folder.path(), "square", optics));
+        let grid = Grid {
+            pixels: 17,
+            pixel_m: 0.2e-3,
+        };
+        let maps: Vec<_> = methods
+            .iter()
+            .map(|(method, _)| still_map(prepared(&array, Task::still(grid), *method).as_ref()))
+            .collect();
+        let peak = maps[0]
+            .irradiance_w_m2
+            .iter()
+            .fold(0.0, |a: f64, &b| a.max(b));
+        for row in 0..17 {
+            for column in 0..17 {
+                let at = |index: usize| (index as f64 - 8.0) * grid.pixel_m;
+                let expected = by_integral("square", optics, at(column), at(row));
+                for (map, (method, tolerance)) in maps.iter().zip(methods) {
+                    assert_close(
+                        &format!("{method:?} [{row}, {column}]"),
+                        map.at(row, column) / peak,
+                        expected / peak,
+                        *tolerance,
+                        "direct: quadrature; the others: their design",
+                    );
+                }
             }
         }
     }
@@ -320,27 +328,22 @@ fn two_elements_interfere_to_the_irradiance_found_by_hand() {
 /// −y at −v, half a beam away, whichever method draws the map.
 #[test]
 fn a_tilt_towards_plus_x_moves_the_light_to_plus_u() {
-    for (tilt_x, tilt_y) in [(5e-6, 0.0), (0.0, -5e-6), (4e-6, -3e-6)] {
+    // Half of λ/size is too much for `factored`.
+    for (tilt_x, tilt_y, methods) in [
+        (5e-6, 0.0, &METHODS[..2]),
+        (0.0, -5e-6, &METHODS[..2]),
+        (4e-6, -3e-6, &METHODS[..2]),
+        (2e-6, 0.0, &METHODS[..]),
+        (1e-6, -2e-6, &METHODS[..]),
+    ] {
         let folder = table(&[[0.3, -0.1, 2.0, 0.4, tilt_x, tilt_y]]);
         let array = array_of(&scenario_in(folder.path(), FAR));
         let grid = Grid {
             pixels: 101,
             pixel_m: 0.25e-3,
         };
-        let (none, still) = (Draw::none(1), Tilts::default());
-        let thrown = {
-            // The same by a draw, on an element that points straight.
-            let folder = table(&[[0.3, -0.1, 2.0, 0.4, 0.0, 0.0]]);
-            let straight = array_of(&scenario_in(folder.path(), FAR));
-            let mut draw = Draw::none(1);
-            (draw.tilt_x_rad[0], draw.tilt_y_rad[0]) = (tilt_x, tilt_y);
-            common::map(&common::direct(&straight, grid, still), &draw)
-        };
-        for map in [
-            common::map(&common::direct(&array, grid, still), &none),
-            common::map(&common::sampled(&array, grid, still, 1.0), &none),
-            thrown,
-        ] {
+        for &(method, _) in methods {
+            let map = still_map(prepared(&array, Task::still(grid), method).as_ref());
             let brightest = (0..grid.pixels * grid.pixels)
                 .max_by(|&a, &b| map.irradiance_w_m2[a].total_cmp(&map.irradiance_w_m2[b]))
                 .unwrap_or(0);

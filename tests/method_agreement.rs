@@ -5,62 +5,15 @@
 
 mod common;
 
-use common::{array_of, assert_close, direct, map, sampled, scenario_in, text};
+use common::layouts::{ALL_ERRORS, BEAM_RAD, LAYOUTS, element, folder_with_table};
+use common::{array_of, assert_close, map, sampled, scenario_in, text};
 use facula::array::Array;
-use facula::farfield::choose::Tilts;
-use facula::farfield::{Grid, Map};
-use facula::perturb::Draw;
+use facula::farfield::choose::Task;
+use facula::farfield::{Direct, Grid, Map};
+use facula::perturb::TrialErrors;
 use facula::scenario::Errors;
 use rayon::prelude::*;
 use std::path::Path;
-
-/// λ/size of every element here, in rad; it is 0.1 m across.
-const BEAM_RAD: f64 = 1e-5;
-
-/// Layouts of a few elements, with pitch for the shape; the table is irregular.
-const LAYOUTS: [(&str, &str); 11] = [
-    (
-        "two",
-        "layout = \"square\"\nrows = 1\ncolumns = 2\npitch = \"0.13 m\"",
-    ),
-    ("block", "layout = \"square\"\nrows = 3\ncolumns = 4"),
-    ("seven", "layout = \"hexagonal\"\nrings = 1"),
-    (
-        "nineteen",
-        "layout = \"hexagonal\"\nrings = 2\npitch = \"0.121 m\"",
-    ),
-    (
-        "disc with a hole",
-        "layout = \"square\"\noutline = \"circle\"\nacross = \"0.6 m\"\nhole = \"0.2 m\"",
-    ),
-    (
-        "disc about a gap",
-        "layout = \"hexagonal\"\noutline = \"circle\"\nacross = \"0.55 m\"\norigin = \"gap\"\nkeep = \"centre\"",
-    ),
-    (
-        "square about a gap",
-        "layout = \"square\"\noutline = \"square\"\nacross = \"0.5 m\"\norigin = \"gap\"\ntaper = \"6 dB\"",
-    ),
-    (
-        "hexagon with a hole",
-        "layout = \"hexagonal\"\noutline = \"hexagon\"\nacross = \"0.6 m\"\nhole = \"0.15 m\"",
-    ),
-    (
-        "one in a square outline",
-        "layout = \"hexagonal\"\noutline = \"square\"\nacross = \"0.16 m\"",
-    ),
-    (
-        "rings",
-        "layout = \"rings\"\nrings = [1, 5, 9]\npitch = \"0.163 m\"",
-    ),
-    ("table", "layout = \"table\"\ntable = \"positions.csv\""),
-];
-
-const TABLE: &str = "x_m,y_m,power,phase_rad,tilt_x_rad,tilt_y_rad\n\
-    -0.171,0.083,1.0,0.0,0,0\n0.0437,0.1911,0.4,1.3,2e-6,0\n0.2213,-0.0127,1.7,-0.4,0,-3e-6\n\
-    -0.0531,-0.1609,0.9,0.2,1e-6,1e-6\n0.1171,-0.2287,1.2,2.1,0,0\n";
-
-const ALL_ERRORS: &str = "piston = \"0.6 rad\"\ndropout = 0.15\npower_spread = 0.3\n";
 
 struct Case<'a> {
     layout: &'a str,
@@ -71,7 +24,7 @@ struct Case<'a> {
     narrow: bool,
 }
 
-fn prepared(folder: &Path, case: &Case<'_>) -> (Array, Errors, Grid, Tilts) {
+fn prepared(folder: &Path, case: &Case<'_>) -> (Array, Errors, Task) {
     let scenario = scenario_in(
         folder,
         &text(
@@ -81,10 +34,6 @@ fn prepared(folder: &Path, case: &Case<'_>) -> (Array, Errors, Grid, Tilts) {
         ),
     );
     let array = array_of(&scenario);
-    let tilts = Tilts {
-        jitter_rad: scenario.errors.jitter_rad.rms(),
-        common_jitter_rad: scenario.errors.common_jitter_rad.rms(),
-    };
     let spot_m = array.spot_m();
     // The window of 16 spots, and never less than the element's own main lobe; or just less
     // than that lobe, where the sampled method takes its coarsest grid.
@@ -95,7 +44,8 @@ fn prepared(folder: &Path, case: &Case<'_>) -> (Array, Errors, Grid, Tilts) {
         (16.0 * spot_m).max(2.4 * beam_m)
     };
     let grid = Grid::covering(width_m, spot_m / case.samples);
-    (array, scenario.errors, grid, tilts)
+    let task = Task::of_trials(grid, &scenario.errors);
+    (array, scenario.errors, task)
 }
 
 /// Largest difference over the peak of the first map.
@@ -114,28 +64,20 @@ fn worst(exact: &Map, other: &Map) -> f64 {
 
 /// Worst difference between the methods over `draws` trials.
 fn disagreement(folder: &Path, case: &Case<'_>, draws: u64) -> f64 {
-    let (array, errors, grid, tilts) = prepared(folder, case);
-    let (exact, painted) = (
-        direct(&array, grid, tilts),
-        sampled(&array, grid, tilts, 1.0),
-    );
+    let (array, errors, task) = prepared(folder, case);
+    let (exact, painted) = (Direct::new(&array, task), sampled(&array, task, 1.0));
     (0..draws)
         .map(|trial| {
-            let draw = Draw::of_trial(&array, &errors, 9, trial);
-            worst(&map(&exact, &draw), &map(&painted, &draw))
+            let trial = TrialErrors {
+                errors: &errors,
+                seed: 9,
+                trial,
+            };
+            let (exact, painted) = (map(&exact, trial), map(&painted, trial));
+            assert_eq!(exact.1, painted.1, "both list the same trial");
+            worst(&exact.0, &painted.0)
         })
         .fold(0.0, f64::max)
-}
-
-fn element(shape: &str, more: &str) -> String {
-    format!("shape = \"{shape}\"\nsize = \"0.1 m\"\n{more}")
-}
-
-fn folder_with_table() -> tempfile::TempDir {
-    let folder = tempfile::tempdir().unwrap_or_else(|error| panic!("{error}"));
-    std::fs::write(folder.path().join("positions.csv"), TABLE)
-        .unwrap_or_else(|error| panic!("{error}"));
-    folder
 }
 
 /// Check every case in parallel, and print them by their error.
@@ -305,11 +247,15 @@ fn a_grid_twice_as_fine_comes_closer_to_the_direct_sum() {
                 samples: 2.6,
                 narrow: false,
             };
-            let (array, errors, grid, tilts) = prepared(folder.path(), &case);
-            let draw = Draw::of_trial(&array, &errors, 1, 0);
-            let exact = map(&direct(&array, grid, tilts), &draw);
+            let (array, errors, task) = prepared(folder.path(), &case);
+            let trial = TrialErrors {
+                errors: &errors,
+                seed: 1,
+                trial: 0,
+            };
+            let exact = map(&Direct::new(&array, task), trial).0;
             let [usual, fine, finest] = [1.0, 2.0, 4.0]
-                .map(|finer| worst(&exact, &map(&sampled(&array, grid, tilts, finer), &draw)));
+                .map(|finer| worst(&exact, &map(&sampled(&array, task, finer), trial).0));
             println!("{shape}, {name}: {usual:.2e} {fine:.2e} {finest:.2e}");
             assert!(fine < 0.7 * usual, "{shape}, {name}: {usual} → {fine}");
             assert!(finest < 0.7 * fine, "{shape}, {name}: {fine} → {finest}");

@@ -144,7 +144,8 @@ fn the_peak_of_a_filled_circle_is_power_times_area_over_wavelength_times_range_s
     let setup = setup(
         "[beam]\nwavelength = \"1.06 um\"\npower = \"1 kW\"\n\
          [array]\nlayout = \"hexagonal\"\nrings = 0\n\
-         [array.element]\nshape = \"circle\"\nsize = \"1 m\"\n[target]\nrange = \"1000 km\"\n",
+         [array.element]\nshape = \"circle\"\nsize = \"1 m\"\n[target]\nrange = \"1000 km\"\n\
+         [run]\nmethod = \"direct\"\n",
     );
     let within = Within(1e-6, "given with ten digits");
     for figure in [Figure::AimIrradiance, Figure::PeakIrradiance] {

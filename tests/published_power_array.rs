@@ -5,10 +5,9 @@
 
 mod common;
 
-use common::{Within, array, assert_close, ideal, map, setup};
+use common::{Within, array, assert_close, ideal, prepared, setup, still_map};
 use facula::farfield::Grid;
-use facula::farfield::choose::{Tilts, choose, prepare};
-use facula::perturb::Draw;
+use facula::farfield::choose::Task;
 use facula::scenario::{Figure, MethodChoice};
 use std::f64::consts::PI;
 
@@ -99,11 +98,7 @@ fn the_power_array_of_1982_collects_and_concentrates_what_was_published() {
 fn grating_lobes_of_the_power_array_are_423_km_apart_in_the_map() {
     let array = array(&power_array("10 dB", 9.0, ""));
     let grid = Grid::covering(9.2e5, array.spot_m() / 2.5);
-    let tilts = Tilts::default();
-    let choice = choose(&array, grid, tilts, MethodChoice::Auto)
-        .unwrap_or_else(|refusal| panic!("{refusal:?}"));
-    let far_field = prepare(&choice, &array, grid, tilts, 0.0);
-    let map = map(far_field.as_ref(), &Draw::none(array.len()));
+    let map = still_map(prepared(&array, Task::still(grid), MethodChoice::Auto).as_ref());
     let centre = grid.centre() as i64;
     // The brightest pixel well away from the main lobe in each of four directions, refined by
     // the centroid of the lobe around it.

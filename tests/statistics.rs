@@ -10,11 +10,11 @@ mod common;
 
 use common::{Directions, Within, array_of, assert_close, scenario, text};
 use facula::array::Array;
-use facula::farfield::Grid;
+use facula::farfield::choose::Task;
 use facula::farfield::closed_form::{mean_map, strehl_std};
-use facula::perturb::{Draw, State};
+use facula::farfield::{Direct, FarField, Grid, Map, Radiated};
+use facula::perturb::TrialErrors;
 use facula::scenario::Errors;
-use facula::trials::power_w;
 use rayon::prelude::*;
 use std::f64::consts::PI;
 
@@ -48,20 +48,32 @@ fn case(count: usize, shape: &str, errors: &str) -> (Array, Errors) {
     (array, scenario.errors)
 }
 
-/// `value` of the aim irradiance over that without errors, and of the draw, for every trial.
+/// `value` of the aim irradiance over that without errors, and of what radiates, for every trial.
 fn sample<T: Send>(
     (array, errors): &(Array, Errors),
     trials: u64,
-    value: impl Fn(f64, &Draw) -> T + Sync,
+    value: impl Fn(f64, Radiated) -> T + Sync,
 ) -> Vec<T> {
-    let directions = Directions::new(array, array.spot_m());
-    let full = directions.at(0.0, 0.0);
+    let aim = Grid {
+        pixels: 1,
+        pixel_m: array.spot_m() / 4.0,
+    };
+    let direct = Direct::new(array, Task::of_trials(aim, errors));
+    let full = direct.irradiance_without_errors_at(0.0, 0.0);
     (0..trials)
         .into_par_iter()
-        .map(|trial| {
-            let draw = Draw::of_trial(array, errors, 2024, trial);
-            value(directions.of(&draw, 0.0, 0.0) / full, &draw)
-        })
+        .map_init(
+            || (direct.worker(), Map::dark(aim)),
+            |(worker, map), trial| {
+                let trial = TrialErrors {
+                    errors,
+                    seed: 2024,
+                    trial,
+                };
+                let radiated = worker.irradiance(trial, map);
+                value(map.aim_w_m2() / full, radiated)
+            },
+        )
         .collect()
 }
 
@@ -204,9 +216,9 @@ fn dropout_dark_or_unlocked_has_the_mean_of_binomial_sums() {
 #[test]
 fn the_combining_efficiency_of_dropped_elements_is_the_fraction_that_operates() {
     let case = case(61, "circle", "dropout = 0.2");
-    let rows = sample(&case, 300, |strehl, draw| {
-        let share = power_w(&case.0, draw) / case.0.power_w();
-        let operating = (61 - draw.count(State::Dark)) as f64 / 61.0;
+    let rows = sample(&case, 300, |strehl, radiated| {
+        let share = radiated.power_w / case.0.power_w();
+        let operating = (61 - radiated.dark) as f64 / 61.0;
         (strehl / share, operating)
     });
     for (efficiency, operating) in rows {
@@ -229,8 +241,8 @@ fn a_power_spread_costs_a_quarter_of_its_square() {
         let n = count as f64;
         let amplitude = (1.0 + spread * spread).powf(-0.125);
         let mean = amplitude.powi(2) + (1.0 - amplitude.powi(2)) / n;
-        let rows = sample(&case, trials, |strehl, draw| {
-            (strehl, power_w(&case.0, draw) / case.0.power_w())
+        let rows = sample(&case, trials, |strehl, radiated| {
+            (strehl, radiated.power_w / case.0.power_w())
         });
         let values: Vec<f64> = rows.iter().map(|row| row.0).collect();
         let powers: Vec<f64> = rows.iter().map(|row| row.1).collect();

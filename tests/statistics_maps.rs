@@ -4,9 +4,8 @@ mod common;
 
 use common::{Unwatched, assert_close, setup, text};
 use facula::farfield::Map;
-use facula::farfield::choose::prepare;
 use facula::farfield::closed_form::mean_map;
-use facula::perturb::Draw;
+use facula::perturb::TrialErrors;
 use facula::scenario::Figure;
 use facula::study::assess::assess;
 use facula::study::setup::Setup;
@@ -15,7 +14,7 @@ use rayon::prelude::*;
 /// Mean over trials and its standard error, at every pixel.
 fn long_exposure(setup: &Setup, trials: u64) -> (Vec<f64>, Vec<f64>) {
     let (array, errors) = (&setup.array, &setup.scenario.errors);
-    let far_field = prepare(&setup.choice, array, setup.grid, setup.tilts, 0.0);
+    let far_field = setup.choice.prepare(array);
     let pixels = setup.grid.pixels * setup.grid.pixels;
     let batch = 50;
     let sums = (0..trials / batch)
@@ -25,8 +24,12 @@ fn long_exposure(setup: &Setup, trials: u64) -> (Vec<f64>, Vec<f64>) {
             let mut map = Map::dark(setup.grid);
             let mut sums = vec![(0.0, 0.0); pixels];
             for trial in number * batch..(number + 1) * batch {
-                let draw = Draw::of_trial(array, errors, setup.scenario.run.seed, trial);
-                worker.irradiance(&draw, &mut map);
+                let trial = TrialErrors {
+                    errors,
+                    seed: setup.scenario.run.seed,
+                    trial,
+                };
+                worker.irradiance(trial, &mut map);
                 for (sum, value) in sums.iter_mut().zip(&map.irradiance_w_m2) {
                     *sum = (sum.0 + value, sum.1 + value * value);
                 }

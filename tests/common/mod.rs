@@ -1,14 +1,20 @@
 //! What the outside checks share: scenarios, single directions, and one comparison.
 #![allow(dead_code, reason = "each test crate uses its share of these")]
 
-use facula::array::Array;
-use facula::farfield::choose::Tilts;
-use facula::farfield::{Direct, FarField, Grid, Map, Sampled, SampledPlan, cells_across_element};
+pub mod layouts;
+
+use facula::array::{Array, Elements};
+use facula::farfield::choose::{Task, choose};
+use facula::farfield::pattern::{ElementPattern, Wavefront};
+use facula::farfield::{
+    Direct, FarField, Grid, Map, Radiated, Sampled, SampledPlan, cells_across_element,
+};
 use facula::figures::Reader;
-use facula::perturb::Draw;
-use facula::scenario::{Figure, Scenario};
+use facula::perturb::{Draw, TrialErrors};
+use facula::scenario::{Errors, Figure, MethodChoice, Scenario};
 use facula::study::setup::Setup;
 use facula::trials::Progress;
+use num_complex::Complex64;
 use std::path::Path;
 
 /// λ·range of every scenario that [`text`] writes, in m²: 1 µm over 1 km.
@@ -124,7 +130,6 @@ pub fn share_within(setup: &Setup, diameter_m: f64) -> f64 {
 /// Irradiance without errors in single directions, through the direct sum.
 pub struct Directions<'a> {
     direct: Direct<'a>,
-    none: Draw,
     range_m: f64,
 }
 
@@ -136,40 +141,102 @@ impl<'a> Directions<'a> {
             pixel_m: 2.0 * reach_m,
         };
         Directions {
-            direct: Direct::new(array, everywhere, 0.0, 0.0),
-            none: Draw::none(array.len()),
+            direct: Direct::new(array, Task::still(everywhere)),
             range_m: array.range_m,
         }
     }
 
     /// At (u, v), in W/m².
     pub fn at(&self, u_m: f64, v_m: f64) -> f64 {
-        self.of(&self.none, u_m, v_m)
-    }
-
-    /// At (u, v) with the errors of a draw, in W/m².
-    pub fn of(&self, draw: &Draw, u_m: f64, v_m: f64) -> f64 {
         self.direct
-            .irradiance_at(draw, u_m / self.range_m, v_m / self.range_m)
+            .irradiance_without_errors_at(u_m / self.range_m, v_m / self.range_m)
     }
 }
 
-/// The map of a draw by a far field.
-pub fn map(far_field: &dyn FarField, draw: &Draw) -> Map {
-    let mut map = Map::dark(far_field.grid());
-    far_field.worker().irradiance(draw, &mut map);
-    map
+/// Irradiance of one trial anywhere, summed here over its listed elements.
+pub struct Anywhere<'a> {
+    array: &'a Array,
+    elements: Elements,
+    draw: Draw,
+    pattern: ElementPattern,
 }
 
-/// The direct sum for a grid and tilts.
-pub fn direct(array: &Array, grid: Grid, tilts: Tilts) -> Direct<'_> {
-    let rms = tilts.jitter_rad.hypot(tilts.common_jitter_rad);
-    Direct::new(array, grid, 0.0, rms)
+impl<'a> Anywhere<'a> {
+    /// For points up to `reach_m` from the aim point and tilts as large as the draw's.
+    pub fn new(array: &'a Array, trial: TrialErrors<'_>, reach_m: f64) -> Anywhere<'a> {
+        let draw = Draw::of_trial(array, trial);
+        let (common_x, common_y) = draw.common_tilt_rad;
+        let tilt = draw
+            .tilt_x_rad
+            .iter()
+            .chain(&draw.tilt_y_rad)
+            .chain([&common_x, &common_y])
+            .fold(0.0, |largest: f64, tilt| largest.max(tilt.abs()));
+        let reach_rad = reach_m / array.range_m + 3.0 * (tilt + array.largest_tilt_rad());
+        let wavefront = Wavefront {
+            curvature_per_m: array.curvature_per_m,
+            mean_over_tilt_rad: 0.0,
+        };
+        Anywhere {
+            array,
+            elements: array.list(),
+            pattern: ElementPattern::new(&array.element, array.wavenumber(), wavefront, reach_rad),
+            draw,
+        }
+    }
+
+    /// At (u, v), in W/m².
+    pub fn at(&self, u_m: f64, v_m: f64) -> f64 {
+        let (elements, draw, k) = (&self.elements, &self.draw, self.array.wavenumber());
+        let (common_x, common_y) = draw.common_tilt_rad;
+        let x = u_m / self.array.range_m - common_x;
+        let y = v_m / self.array.range_m - common_y;
+        let field: Complex64 = (0..elements.len())
+            .map(|n| {
+                let path_m = x * elements.x_m[n] + y * elements.y_m[n];
+                let phase = elements.phase_rad[n] + draw.phase_rad[n] - k * path_m;
+                let amplitude = elements.amplitude[n] * draw.amplitude[n];
+                let tilt_x = elements.tilt_x_rad[n] + draw.tilt_x_rad[n];
+                let tilt_y = elements.tilt_y_rad[n] + draw.tilt_y_rad[n];
+                Complex64::from_polar(amplitude, phase) * self.pattern.at(x - tilt_x, y - tilt_y)
+            })
+            .sum();
+        field.norm_sqr() / (self.array.wavelength_m * self.array.range_m).powi(2)
+    }
+
+    /// Power of the trial, in W.
+    pub fn power_w(&self) -> f64 {
+        let amplitudes = self.elements.amplitude.iter().zip(&self.draw.amplitude);
+        amplitudes
+            .map(|(whole, factor)| (whole * factor).powi(2))
+            .sum()
+    }
+}
+
+/// The map of a trial by a far field, and what it radiates.
+pub fn map(far_field: &dyn FarField, trial: TrialErrors<'_>) -> (Map, Radiated) {
+    let mut map = Map::dark(far_field.grid());
+    let radiated = far_field.worker().irradiance(trial, &mut map);
+    (map, radiated)
+}
+
+/// The map without errors by a far field.
+pub fn still_map(far_field: &dyn FarField) -> Map {
+    map(far_field, TrialErrors::none(&Errors::none())).0
+}
+
+/// A far field by the method asked for.
+#[track_caller]
+pub fn prepared(array: &Array, task: Task, method: MethodChoice) -> Box<dyn FarField + '_> {
+    choose(array, task, method)
+        .unwrap_or_else(|refusal| panic!("{refusal:?}"))
+        .prepare(array)
 }
 
 /// The sampled method, `finer` times as many cells across an element as it would take.
-pub fn sampled(array: &Array, grid: Grid, tilts: Tilts, finer: f64) -> Sampled<'_> {
-    let largest = array.largest_tilt_rad() + 6.0 * tilts.jitter_rad.hypot(tilts.common_jitter_rad);
+pub fn sampled(array: &Array, task: Task, finer: f64) -> Sampled<'_> {
+    let largest = array.largest_tilt_rad() + 6.0 * task.jitter_rad.hypot(task.common_jitter_rad);
+    let grid = task.grid;
     let usual = SampledPlan::new(array, grid, cells_across_element(array, grid), largest);
     let cells = finer * array.element.size_m / usual.pitch_m;
     let plan = if finer > 1.0 {
@@ -177,7 +244,7 @@ pub fn sampled(array: &Array, grid: Grid, tilts: Tilts, finer: f64) -> Sampled<'
     } else {
         usual
     };
-    Sampled::new(array, grid, plan, 0.0)
+    Sampled::new(array, grid, plan, task.mean_over_tilt_rad)
 }
 
 /// A zero of `f` between `low` and `high`, where its signs differ.
