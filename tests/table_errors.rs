@@ -224,17 +224,17 @@ fn arrays_that_cannot_be_computed_are_refused_with_line_and_key() {
         ),
         (
             BLOCK,
-            "layout = \"square\"\nrows = 99999\ncolumns = 99999\n",
+            "layout = \"square\"\nrows = 999999\ncolumns = 999999\n",
             3,
             "array",
-            "memory",
+            "at most 2e10",
         ),
         (
             BLOCK,
             "layout = \"hexagonal\"\npitch = \"20 cm\"\noutline = \"circle\"\nacross = \"1e9 m\"\n",
             3,
             "array",
-            "memory",
+            "at most 2e10",
         ),
         ("\"auto\"", "\"1e20 m\"", 17, "run.window", "pixels"),
         (
@@ -273,11 +273,11 @@ fn arrays_that_cannot_be_computed_are_refused_with_line_and_key() {
             "one element",
         ),
         (
-            "\"auto\"",
-            "\"auto\"\nmethod = \"factored\"",
-            18,
+            "piston = \"10 nm\"",
+            "jitter = \"20 urad\"\n[run]\nmethod = \"factored\"",
+            14,
             "run.method",
-            "does not have",
+            "tilts too large",
         ),
         (
             BOUND,

@@ -11,6 +11,9 @@ use crate::scenario::{Element, Facets, Layout, Scenario};
 use sites::LatticeSites;
 use std::f64::consts::{LN_10, PI, TAU};
 
+/// Most elements: beyond, a single trial takes minutes.
+const MOST_ELEMENTS: f64 = 2e10;
+
 /// A tiled aperture, with the light it carries.
 ///
 /// The static part of each element's phase and tilt (a table's offsets, and what
@@ -95,9 +98,19 @@ impl Array {
     /// facets leave k |s|²/(2L) inside (Fresnel's integral, expanded about r).
     ///
     /// # Errors
-    /// An unusable table, an outline or hole that leaves no element, or elements that overlap.
+    /// An unusable table, an outline or hole that leaves no element, elements that overlap, or too many.
     pub fn new(scenario: &Scenario) -> Result<Array, ScenarioError> {
         let section = &scenario.array;
+        let foreseen = sites::foreseen(section);
+        if foreseen > MOST_ELEMENTS {
+            return Err(scenario.error(
+                "array",
+                format!("about {foreseen:.0e} elements"),
+                format!(
+                    "at most {MOST_ELEMENTS:.0e} can be computed: use fewer, or a larger pitch"
+                ),
+            ));
+        }
         let sites = match sites::lattice_sites(section) {
             Some(sites) if sites.is_empty() => return Err(no_element(scenario)),
             Some(sites) => tapered(scenario, sites),

@@ -82,6 +82,19 @@ impl LatticeSites {
     }
 }
 
+/// About how many elements a layout holds, before any is laid out; 0 for a table.
+pub fn foreseen(section: &ArraySection) -> f64 {
+    match &section.layout {
+        Layout::SquareBlock { rows, columns } => *rows as f64 * *columns as f64,
+        Layout::HexagonalRings { rings } => 3.0 * (*rings as f64) * (*rings as f64 + 1.0) + 1.0,
+        Layout::Outlined {
+            lattice, across_m, ..
+        } => across_m * across_m / cell_area_m2(*lattice, section.pitch_m),
+        Layout::Rings { counts } => counts.iter().map(|&count| count as f64).sum(),
+        Layout::Table { .. } => 0.0,
+    }
+}
+
 /// Sites of a layout with a lattice; `None` for rings and tables.
 pub fn lattice_sites(section: &ArraySection) -> Option<LatticeSites> {
     let pitch_m = section.pitch_m;
