@@ -22,6 +22,9 @@ use num_complex::Complex64;
 use rayon::prelude::*;
 use std::f64::consts::TAU;
 
+/// Seconds that the direct sum may take for the mean field, which it knows to all digits.
+const DIRECT_S: f64 = 0.02;
+
 /// Moments of one element's complex amplitude z over piston, dropout and power spread.
 #[derive(Debug, Clone, Copy, PartialEq)]
 pub struct Moments {
@@ -102,11 +105,11 @@ fn blur(fx: &f64, fy: &f64, sigma: f64) -> f64 {
 fn independent_mean(array: &Array, errors: &Errors, grid: Grid) -> Result<Map, Refusal> {
     let jitter_rad = errors.jitter_rad.rms();
     let moments = Moments::of(errors);
-    let choice = choose(
-        array,
-        Task::mean_field(grid, jitter_rad),
-        MethodChoice::Auto,
-    )?;
+    let task = Task::mean_field(grid, jitter_rad);
+    let choice = match choose(array, task, MethodChoice::Direct) {
+        Ok(exact) if exact.trial_s <= DIRECT_S => exact,
+        _ => choose(array, task, MethodChoice::Auto)?,
+    };
     let far_field = choice.prepare(array);
     let mut map = Map::dark(grid);
     far_field
