@@ -90,7 +90,7 @@ fn the_mean_map_of_the_trials_is_the_closed_form_at_every_pixel() {
             layout,
             element,
             &format!(
-                "{target}\n[errors]\n{errors}\ndropped = \"{dropped}\"\n[run]\nseed = 5\nsamples_per_spot = 2.5\nwindow = \"40 mm\""
+                "{target}\n[errors]\n{errors}\ndropped = \"{dropped}\"\n[run]\nseed = 5\nsamples_per_spot = 2.5\nwindow = \"24 mm\""
             ),
         ));
         let (mean, error) = long_exposure(&setup, 1_000);
@@ -143,7 +143,7 @@ fn what_assess_predicts_is_what_its_trials_find() {
                 &format!(
                     "bucket_diameter = \"4 mm\"\n[errors]\npiston = {{ loop = \"0.3 rad\", drift = \"40 nm\" }}\n\
                  jitter = \"2 urad\"\ncommon_jitter = \"0.3 urad\"\ndropout = \"8 %\"\ndropped = \"{dropped}\"\n\
-                 power_spread = 0.2\n[run]\ntrials = 400\nseed = 3"
+                 power_spread = 0.2\n[run]\ntrials = 250\nseed = 3"
                 ),
             )),
             &Unwatched,
