@@ -275,7 +275,7 @@ fn arrays_that_cannot_be_computed_are_refused_with_line_and_key() {
         (
             "piston = \"10 nm\"",
             "jitter = \"20 urad\"\n[run]\nmethod = \"factored\"",
-            14,
+            15,
             "run.method",
             "tilts too large",
         ),
