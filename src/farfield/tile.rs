@@ -193,7 +193,7 @@ pub fn process(
         clear_idle(&mut workspace.block, tile.tile, occupied);
     }
     if let Some((along_x, along_y)) = tile.static_tilt_rad {
-        add_static_tilt(recipe, &mut workspace.block, along_x, along_y);
+        add_static_tilt(&mut workspace.block, along_x, along_y);
     }
     strengths::<FUSED>(expansion, workspace);
     take_census(recipe, tile.factor, workspace);
@@ -236,10 +236,6 @@ pub fn process_list(
         block.state[slot] = State::Lit;
     }
     if let Some((x, y)) = tilt {
-        if !recipe.jitters() {
-            block.tilt_x_rad = [0.0; GROUP];
-            block.tilt_y_rad = [0.0; GROUP];
-        }
         for slot in 0..count {
             block.tilt_x_rad[slot] += x[slot] as f32;
             block.tilt_y_rad[slot] += y[slot] as f32;
@@ -298,11 +294,7 @@ fn clear_idle(block: &mut Block, tile: usize, occupied: &[[Range<usize>; 2]]) {
 }
 
 #[inline(always)]
-fn add_static_tilt(recipe: &Recipe, block: &mut Block, along_x: &[f32], along_y: &[f32; LANES]) {
-    if !recipe.jitters() {
-        block.tilt_x_rad = [0.0; GROUP];
-        block.tilt_y_rad = [0.0; GROUP];
-    }
+fn add_static_tilt(block: &mut Block, along_x: &[f32], along_y: &[f32; LANES]) {
     for (column, x) in along_x.iter().enumerate() {
         for lane in 0..LANES {
             block.tilt_x_rad[column * LANES + lane] += x;

@@ -66,11 +66,6 @@ impl Recipe {
         }
     }
 
-    /// Whether elements tilt at random.
-    pub fn jitters(&self) -> bool {
-        self.jitter_rad > 0.0
-    }
-
     /// Whether elements may be out.
     pub fn drops(&self) -> bool {
         self.dropout_below > 0
@@ -81,7 +76,7 @@ impl Recipe {
         Stream::new(self.seed, purpose, self.trial)
     }
 
-    /// Draw the errors of a group into a block that only ever served this recipe's errors.
+    /// Draw the errors of a group.
     #[inline(always)]
     pub fn fill<const FUSED: bool>(&self, group: u64, block: &mut Block) {
         if self.piston_turns > 0.0 {
@@ -93,6 +88,9 @@ impl Recipe {
         if self.jitter_rad > 0.0 {
             let stream = self.stream(Purpose::Jitter);
             jitter::draw::<FUSED>(block, self.jitter_rad, stream, group);
+        } else {
+            block.tilt_x_rad = [0.0; GROUP];
+            block.tilt_y_rad = [0.0; GROUP];
         }
         if self.power_sigma > 0.0 {
             let stream = self.stream(Purpose::PowerSpread);
@@ -100,8 +98,8 @@ impl Recipe {
         } else {
             block.amplitude = [1.0; GROUP];
         }
+        block.state = [State::Lit; GROUP];
         if self.drops() {
-            block.state = [State::Lit; GROUP];
             let luck = self.stream(Purpose::Dropout);
             let phases = self.stream(Purpose::UnlockedPhase);
             dropout::draw(block, self.dropout_below, self.dropped, luck, phases, group);
@@ -109,7 +107,7 @@ impl Recipe {
     }
 }
 
-/// Draw the errors of a group into a block that only ever served this recipe's errors.
+/// Draw the errors of a group.
 #[multiversion(targets(
     "x86_64+avx2+fma+avx512f+avx512bw+avx512dq+avx512vl",
     "x86_64+avx2+fma"

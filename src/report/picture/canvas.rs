@@ -275,7 +275,7 @@ impl Canvas {
     pub fn into_png(self) -> Vec<u8> {
         let mut png = Vec::new();
         let written =
-            PngEncoder::new_with_quality(&mut png, CompressionType::Default, FilterType::Adaptive)
+            PngEncoder::new_with_quality(&mut png, CompressionType::Fast, FilterType::Sub)
                 .write_image(
                     &self.rgb,
                     self.width as u32,
