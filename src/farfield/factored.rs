@@ -11,7 +11,8 @@ use super::kernel::{Axis, WIDTH};
 use super::map::{Grid, Map};
 use super::pattern::Wavefront;
 use super::tile::{
-    Columns, RunningColumns, Tile, Workspace, add_lane, process, process_list, spread_row,
+    Columns, RunningColumns, Tile, Workspace, add_lane, add_term, deconvolve, process,
+    process_list, spread_row,
 };
 use super::tilt::{Demand, TiltExpansion};
 use super::{FarField, Method, Radiated, Worker};
@@ -440,8 +441,6 @@ impl FactoredWorker<'_> {
         let factored = self.factored;
         let (axis, pixels) = (&factored.axis, factored.grid.pixels);
         let (cells, length, centre) = (axis.cells, axis.length, factored.grid.centre());
-        // Map index → transform bin, negative frequencies at the end.
-        let bin = |index: usize| (index + length - centre) % length;
         let still = common.0.abs() <= 0.0 && common.1.abs() <= 0.0;
         let directions = |common: f64| -> Vec<f64> {
             let axis_m = factored.grid.axis_m();
@@ -459,14 +458,12 @@ impl FactoredWorker<'_> {
             {
                 let line = &mut self.lines[..length];
                 line.fill(Complex64::default());
-                for (cell, value) in row.iter().enumerate() {
+                for (value, &place) in row.iter().zip(&axis.places) {
                     // Grids narrower than the points' reach wrap around.
-                    line[axis.place(cell)] += value;
+                    line[place] += value;
                 }
                 factored.fft.process_with_scratch(line, &mut self.scratch);
-                for (index, value) in kept.iter_mut().enumerate() {
-                    *value = line[bin(index)] * axis.deconvolution[index];
-                }
+                deconvolve(line, centre, &axis.deconvolution, kept);
             }
             let pattern = if still {
                 &factored.fields[term]
@@ -480,21 +477,17 @@ impl FactoredWorker<'_> {
             for first in (0..pixels).step_by(GATHERED) {
                 let width = GATHERED.min(pixels - first);
                 self.lines.fill(Complex64::default());
-                for (cell, row) in self.half_way.chunks_exact(pixels).enumerate() {
-                    let place = axis.place(cell);
-                    for column in 0..width {
-                        self.lines[column * length + place] += row[first + column];
+                for (row, &place) in self.half_way.chunks_exact(pixels).zip(&axis.places) {
+                    for (column, value) in row[first..first + width].iter().enumerate() {
+                        self.lines[column * length + place] += value;
                     }
                 }
                 for column in 0..width {
                     let line = &mut self.lines[column * length..(column + 1) * length];
                     factored.fft.process_with_scratch(line, &mut self.scratch);
-                    let place = (first + column) * pixels;
-                    let field = &mut self.field[place..place + pixels];
-                    let pattern = &pattern[place..place + pixels];
-                    for (index, (value, pattern)) in field.iter_mut().zip(pattern).enumerate() {
-                        *value += line[bin(index)] * axis.deconvolution[index] * pattern;
-                    }
+                    let span = (first + column) * pixels..(first + column + 1) * pixels;
+                    let (field, pattern) = (&mut self.field[span.clone()], &pattern[span]);
+                    add_term(line, centre, &axis.deconvolution, pattern, field);
                 }
             }
         }

@@ -32,6 +32,8 @@ pub struct Axis {
     /// Cells per metre in the aperture.
     cells_per_m: f64,
     beta: f64,
+    /// Place of each cell on the transform's circle.
+    pub places: Vec<usize>,
     /// 1/(kernel's transform) at each map pixel.
     pub deconvolution: Vec<f64>,
 }
@@ -56,6 +58,9 @@ impl Axis {
             cells,
             cells_per_m,
             beta,
+            places: (first_cell..first_cell + cells as i64)
+                .map(|cell| cell.rem_euclid(length as i64) as usize)
+                .collect(),
             deconvolution: Vec::new(),
         };
         let half = WIDTH as f64 / 2.0;
@@ -91,10 +96,5 @@ impl Axis {
             *weight = self.kernel(first + tap as f64 - position);
         }
         ((first as i64 - self.first_cell) as usize, weights)
-    }
-
-    /// Place on the transform's circle of a cell counted from `first_cell`.
-    pub fn place(&self, cell: usize) -> usize {
-        (self.first_cell + cell as i64).rem_euclid(self.length as i64) as usize
     }
 }

@@ -276,6 +276,49 @@ pub fn spread_row(row: &[Complex64], weights: &[f64; WIDTH], lines: &mut [Comple
     }
 }
 
+/// Keep the map's part of a transformed line, the kernel divided out.
+#[multiversion(targets(
+    "x86_64+avx2+fma+avx512f+avx512bw+avx512dq+avx512vl",
+    "x86_64+avx2+fma"
+))]
+pub fn deconvolve(
+    line: &[Complex64],
+    centre: usize,
+    deconvolution: &[f64],
+    kept: &mut [Complex64],
+) {
+    // Negative frequencies stand at the line's end.
+    let values = line[line.len() - centre..].iter().chain(line);
+    for ((kept, value), factor) in kept.iter_mut().zip(values).zip(deconvolution) {
+        *kept = value * factor;
+    }
+}
+
+/// Add the map's part of a transformed line, the kernel divided out, times a pattern to a field.
+#[multiversion(targets(
+    "x86_64+avx2+fma+avx512f+avx512bw+avx512dq+avx512vl",
+    "x86_64+avx2+fma"
+))]
+pub fn add_term(
+    line: &[Complex64],
+    centre: usize,
+    deconvolution: &[f64],
+    pattern: &[Complex64],
+    field: &mut [Complex64],
+) {
+    let mut add = |line: &[Complex64], from: usize| {
+        let span = from..from + line.len();
+        let parts = pattern[span.clone()]
+            .iter()
+            .zip(&deconvolution[span.clone()]);
+        for ((field, value), (pattern, factor)) in field[span].iter_mut().zip(line).zip(parts) {
+            *field += value * factor * pattern;
+        }
+    };
+    add(&line[line.len() - centre..], 0);
+    add(&line[..pattern.len() - centre], centre);
+}
+
 /// Darken slots without an element.
 #[inline(always)]
 fn clear_idle(block: &mut Block, tile: usize, occupied: &[[Range<usize>; 2]]) {
