@@ -1,6 +1,7 @@
 //! Which method computes a map, what it costs, and whether it fits in memory.
 
 use super::factored::expand;
+use super::kernel::{Axis, WIDTH};
 use super::pattern::{ElementPattern, Wavefront};
 use super::tilt::TiltExpansion;
 use super::{Direct, Factored, FarField, Grid, Method, Sampled, SampledPlan, cells_across_element};
@@ -206,7 +207,7 @@ pub fn choose(array: &Array, task: Task, requested: MethodChoice) -> Result<Choi
 }
 
 /// Seconds of one round of [`reference_work`] on the machine that the costs below were taken on.
-pub const REFERENCE_WORK_S: f64 = 10.5e-6;
+pub const REFERENCE_WORK_S: f64 = 7.5e-6;
 
 /// Arithmetic of the kind that a trial is made of, to compare machines by.
 pub fn reference_work(rounds: usize) {
@@ -222,17 +223,24 @@ pub fn reference_work(rounds: usize) {
 }
 
 /// One complex multiply-add in a vectorised loop.
-const MULTIPLY_ADD_S: f64 = 0.7e-9;
+const MULTIPLY_ADD_S: f64 = 0.5e-9;
 /// One sine and cosine.
-const PHASOR_S: f64 = 15e-9;
+const PHASOR_S: f64 = 11e-9;
 /// One butterfly: length × log₂ length of these make an FFT.
-const BUTTERFLY_S: f64 = 0.35e-9;
+const BUTTERFLY_S: f64 = 0.27e-9;
 /// One cell of a painted row.
 const CELL_S: f64 = 3e-9;
 /// Covered area of one cell.
 const COVER_S: f64 = 60e-9;
 /// Drawing one element's errors of every kind.
-const DRAW_S: f64 = 5e-9;
+const DRAW_S: f64 = 7e-9;
+
+/// Seconds of a lattice's still field, row by row.
+pub fn still_s(array: &Array, grid: Grid) -> f64 {
+    let cells = Axis::new(array, grid).cells as f64;
+    let rows = array.lattice().map_or(0, |sites| sites.rows.len()) as f64;
+    25e-9 * rows * cells
+}
 
 /// Seconds of one transform of a length.
 fn transform_s(length: usize) -> f64 {
@@ -288,26 +296,29 @@ fn sampled(array: &Array, task: Task) -> Choice {
 
 fn factored(array: &Array, task: Task) -> Option<Choice> {
     let expansion = expand(array, task)?;
-    let axis = super::kernel::Axis::new(array, task.grid);
+    let axis = Axis::new(array, task.grid);
     let (elements, pixels) = (array.len() as f64, task.grid.pixels as f64);
     let (terms, cells) = (expansion.terms() as f64, axis.cells as f64);
     let spread_s = match array.sites {
-        Sites::Lattice { .. } => 1.0e-9,
+        Sites::Lattice { .. } => 1.6e-9,
         Sites::List(_) => 60e-9,
     };
     // A tilt of the whole array has every term evaluated anew.
     let each_pixel_s = if task.common_jitter_rad > 0.0 {
-        3e-9 + 0.7e-9 * expansion.nodes() as f64
+        3e-9 + 0.4e-9 * expansion.nodes() as f64
     } else {
         3e-9
     };
-    let listed_bytes = match array.sites {
-        Sites::Lattice { .. } => 0.0,
+    // Rows, and for each column the weights and the running sums of its cells; or a list.
+    let site_bytes = match &array.sites {
+        Sites::Lattice { sites, .. } => {
+            80.0 * sites.rows.len() as f64 + 4.0 * 20.0 * WIDTH as f64 * sites.columns as f64
+        }
         Sites::List(_) => 130.0 * elements,
     };
     Some(Choice {
         task,
-        shared_bytes: listed_bytes + 16.0 * terms * pixels * pixels,
+        shared_bytes: site_bytes + 16.0 * terms * pixels * pixels,
         worker_bytes: 16.0 * (terms * cells * cells + cells * pixels + 2.0 * pixels * pixels)
             + 64.0 * terms * cells,
         setup_s: 1e-3 + 30e-9 * terms * pixels * pixels,

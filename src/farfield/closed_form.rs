@@ -14,8 +14,9 @@
 use super::choose::{Refusal, Task, choose};
 use super::map::{Grid, Map};
 use super::pattern::{Wavefront, on_grid};
+use super::pointing::pointing;
 use super::smooth::Samples;
-use crate::array::{Array, Elements};
+use crate::array::Array;
 use crate::perturb::TrialErrors;
 use crate::scenario::{Dropped, Errors, MethodChoice};
 use num_complex::Complex64;
@@ -145,7 +146,7 @@ fn scattered(array: &Array, moments: Moments, jitter_rad: f64, grid: Grid) -> Ve
     };
     let mut spectrum = samples.spectrum(&squares(0.0));
     let coherent = samples.spectrum(&squares(jitter_rad));
-    let shifts = shifts(array, &samples);
+    let pointing = pointing(array, &samples);
     let frequencies = samples.frequencies();
     let scale = (array.wavelength_m * array.range_m).powi(-2);
     spectrum
@@ -158,46 +159,10 @@ fn scattered(array: &Array, moments: Moments, jitter_rad: f64, grid: Grid) -> Ve
                     * blur(&frequencies[i], &frequencies[j], jitter_rad)
                     * moments.mean_square;
                 let coherent = moments.mean * moments.mean * coherent[place];
-                *value = (jittered - coherent) * shifts[place] * scale;
+                *value = (jittered - coherent) * pointing[place] * scale;
             }
         });
     samples.evaluate(&spectrum, &theta)
-}
-
-/// Σ Pₙ exp(−i2πf·δₙ) at every frequency: the transform of where the elements point.
-fn shifts(array: &Array, samples: &Samples) -> Vec<Complex64> {
-    let count = samples.count;
-    if array.largest_tilt_rad() <= 0.0 {
-        return vec![array.power_w().into(); count * count];
-    }
-    let frequencies = samples.frequencies();
-    let elements: Elements = array.list();
-    // Elements in fixed blocks: phasors along x of a block, then every row takes them up.
-    let mut sums = vec![Complex64::default(); count * count];
-    for first in (0..elements.len()).step_by(256) {
-        let block = first..(first + 256).min(elements.len());
-        let along_x: Vec<Complex64> = block
-            .clone()
-            .flat_map(|n| {
-                let tilt = elements.tilt_x_rad[n];
-                frequencies
-                    .iter()
-                    .map(move |f| Complex64::cis(-TAU * f * tilt))
-            })
-            .collect();
-        sums.par_chunks_exact_mut(count)
-            .zip(&frequencies)
-            .for_each(|(row, f)| {
-                for (phasors, n) in along_x.chunks_exact(count).zip(block.clone()) {
-                    let power = elements.amplitude[n] * elements.amplitude[n];
-                    let along_y = power * Complex64::cis(-TAU * f * elements.tilt_y_rad[n]);
-                    for (value, phasor) in row.iter_mut().zip(phasors) {
-                        *value += along_y * phasor;
-                    }
-                }
-            });
-    }
-    sums
 }
 
 /// Standard deviation of the Strehl ratio over draws of piston, dropout and power spread.

@@ -12,6 +12,7 @@ mod kernel;
 pub mod map;
 mod paint;
 pub mod pattern;
+mod pointing;
 mod quadrature;
 mod sampled;
 mod smooth;

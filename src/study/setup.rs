@@ -3,7 +3,7 @@
 
 use crate::array::Array;
 use crate::error::ScenarioError;
-use crate::farfield::choose::{Choice, MEMORY_LIMIT_BYTES, Refusal, Task, choose};
+use crate::farfield::choose::{Choice, MEMORY_LIMIT_BYTES, Refusal, Task, choose, still_s};
 use crate::farfield::closed_form::mean_map;
 use crate::farfield::pattern::clipping_loss;
 use crate::farfield::{Grid, Map};
@@ -131,8 +131,9 @@ impl Setup {
         let maps = 1.0 + self.scenario.errors.sources() as f64;
         let pixels = self.grid.pixels as f64;
         // A still far field, the scattered part on a grid of its own, and a reading.
-        let still_s = 2e-3 + 1e-7 * pixels * pixels;
-        maps * (8e-3 + still_s + self.reading_s()) + 30e-3
+        let rows_s = still_s(&self.array, self.grid);
+        let still_s = rows_s + 2e-3 + 1e-7 * pixels * pixels;
+        maps * (20e-3 + still_s + self.reading_s()) + rows_s + 100e-3
     }
 
     fn refuse_undefined_bounds(&self) -> Result<(), ScenarioError> {
@@ -167,8 +168,8 @@ pub const LINEAR: [Figure; 4] = [
     Figure::BucketPower,
 ];
 
-/// Most elements that the closed form lists when each points elsewhere.
-const MOST_LISTED: usize = 1_000_000;
+/// Most elements that the closed form takes one by one, when each points elsewhere.
+const MOST_POINTING: usize = 100_000_000;
 
 /// Refuse what the closed form cannot say.
 fn refuse_beyond_closed_form(scenario: &Scenario, array: &Array) -> Result<(), ScenarioError> {
@@ -194,7 +195,7 @@ fn refuse_beyond_closed_form(scenario: &Scenario, array: &Array) -> Result<(), S
             ),
         ));
     }
-    if array.len() > MOST_LISTED && array.largest_tilt_rad() > 0.0 {
+    if array.len() > MOST_POINTING && array.largest_tilt_rad() > 0.0 {
         let key = match scenario.array.layout {
             Layout::Table { .. } => "array.table",
             _ => "target.focus",
@@ -202,7 +203,7 @@ fn refuse_beyond_closed_form(scenario: &Scenario, array: &Array) -> Result<(), S
         return Err(scenario.error(
             key,
             format!("{} elements that each point elsewhere, with run.method = \"closed_form\"", array.len()),
-            format!("with static tilts the closed form holds at most {MOST_LISTED} elements: focus at the range, or take method = \"auto\""),
+            format!("with static tilts the closed form holds at most {MOST_POINTING} elements: focus at the range, or take method = \"auto\""),
         ));
     }
     Ok(())
