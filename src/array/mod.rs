@@ -202,15 +202,20 @@ impl Array {
 
     /// Bound on |x| and |y| of every site, idle columns of a lattice included.
     pub fn reach_m(&self) -> f64 {
-        let half_m = self.envelope_diameter_m / 2.0;
-        let Some(sites) = self.lattice() else {
-            return half_m;
+        let largest = |positions: &mut dyn Iterator<Item = f64>| {
+            positions.fold(0.0, |reach: f64, position| reach.max(position.abs()))
         };
-        let last = sites.columns.saturating_sub(1);
-        [0, 1]
-            .into_iter()
-            .flat_map(|parity| [sites.x_m(parity, 0), sites.x_m(parity, last)])
-            .fold(half_m, |reach, x| reach.max(x.abs()))
+        match &self.sites {
+            Sites::List(elements) => {
+                largest(&mut elements.x_m.iter().chain(&elements.y_m).copied())
+            }
+            Sites::Lattice { sites, .. } => {
+                let last = sites.columns.saturating_sub(1);
+                let ends = [0, 1].map(|parity| [sites.x_m(parity, 0), sites.x_m(parity, last)]);
+                let rows = sites.rows.iter().map(|row| row.y_m);
+                largest(&mut ends.into_iter().flatten().chain(rows))
+            }
+        }
     }
 
     /// k = 2π/λ in rad/m.
