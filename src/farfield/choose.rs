@@ -228,6 +228,8 @@ const MULTIPLY_ADD_S: f64 = 0.5e-9;
 const PHASOR_S: f64 = 11e-9;
 /// One butterfly: length × log₂ length of these make an FFT.
 const BUTTERFLY_S: f64 = 0.27e-9;
+/// Time of a transform in single precision over that in double.
+const SINGLE: f64 = 0.5;
 /// One cell of a painted row.
 const CELL_S: f64 = 3e-9;
 /// Covered area of one cell.
@@ -324,7 +326,8 @@ fn factored(array: &Array, task: Task) -> Option<Choice> {
         setup_s: 1e-3 + 30e-9 * terms * pixels * pixels,
         trial_s: elements * (DRAW_S + terms * spread_s)
             + terms
-                * ((cells + pixels) * transform_s(axis.length) + each_pixel_s * pixels * pixels),
+                * (SINGLE * (cells + pixels) * transform_s(axis.length)
+                    + each_pixel_s * pixels * pixels),
         plan: Plan::Factored(expansion),
         why: AS_ASKED,
     })

@@ -5,10 +5,20 @@ use rustfft::{FftDirection, FftPlanner};
 
 /// The smallest length of at least `least` whose prime factors are 2, 3 and 5.
 pub fn good_length(least: usize) -> usize {
+    next_with_factors(least, &[2, 3, 5])
+}
+
+/// The smallest multiple of 16 of at least `least` with no prime factor above 7: single
+/// precision transforms these two to three times as fast as their neighbours.
+pub fn good_single_length(least: usize) -> usize {
+    16 * next_with_factors(least.div_ceil(16), &[2, 3, 5, 7])
+}
+
+fn next_with_factors(least: usize, factors: &[usize]) -> usize {
     (least.max(1)..)
         .find(|&length| {
             let mut rest = length;
-            for factor in [2, 3, 5] {
+            for &factor in factors {
                 while rest.is_multiple_of(factor) {
                     rest /= factor;
                 }

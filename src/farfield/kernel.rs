@@ -7,7 +7,7 @@
 //! kernel is exp(β(√(1 − (2t/w)²) − 1)) over w cells (Barnett, Magland & af Klinteberg,
 //! SIAM J. Sci. Comput. 41, C479 (2019)).
 
-use super::fft::good_length;
+use super::fft::good_single_length;
 use super::map::Grid;
 use super::quadrature::gauss_legendre;
 use crate::array::Array;
@@ -35,7 +35,7 @@ pub struct Axis {
     /// Place of each cell on the transform's circle.
     pub places: Vec<usize>,
     /// 1/(kernel's transform) at each map pixel.
-    pub deconvolution: Vec<f64>,
+    pub deconvolution: Vec<f32>,
 }
 
 impl Axis {
@@ -43,7 +43,7 @@ impl Axis {
     pub fn new(array: &Array, grid: Grid) -> Axis {
         // A spread of WIDTH cells must not meet itself around the grid.
         let least = (OVERSAMPLING * grid.pixels as f64).ceil() as usize;
-        let length = good_length(least.max(2 * WIDTH + 2));
+        let length = good_single_length(least.max(2 * WIDTH + 2));
         let oversampling = length as f64 / grid.pixels as f64;
         // Just below the kernel's band limit at this oversampling (same paper, equation 4.5).
         let beta = 0.976 * PI * WIDTH as f64 * (1.0 - 0.5 / oversampling.min(3.0));
@@ -73,7 +73,7 @@ impl Axis {
                     .iter()
                     .map(|(t, weight)| 2.0 * weight * axis.kernel(*t) * (TAU * frequency * t).cos())
                     .sum();
-                1.0 / transform
+                (1.0 / transform) as f32
             })
             .collect();
         axis

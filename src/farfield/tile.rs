@@ -12,7 +12,7 @@ use crate::perturb::State;
 use crate::perturb::block::{Block, Recipe};
 use crate::perturb::vector::{cos_sin_turns, fma};
 use multiversion::multiversion;
-use num_complex::Complex64;
+use num_complex::{Complex32, Complex64};
 use std::ops::Range;
 
 /// One value a row.
@@ -282,10 +282,10 @@ pub fn spread_row(row: &[Complex64], weights: &[f64; WIDTH], lines: &mut [Comple
     "x86_64+avx2+fma"
 ))]
 pub fn deconvolve(
-    line: &[Complex64],
+    line: &[Complex32],
     centre: usize,
-    deconvolution: &[f64],
-    kept: &mut [Complex64],
+    deconvolution: &[f32],
+    kept: &mut [Complex32],
 ) {
     // Negative frequencies stand at the line's end.
     let values = line[line.len() - centre..].iter().chain(line);
@@ -300,19 +300,20 @@ pub fn deconvolve(
     "x86_64+avx2+fma"
 ))]
 pub fn add_term(
-    line: &[Complex64],
+    line: &[Complex32],
     centre: usize,
-    deconvolution: &[f64],
+    deconvolution: &[f32],
     pattern: &[Complex64],
     field: &mut [Complex64],
 ) {
-    let mut add = |line: &[Complex64], from: usize| {
+    let mut add = |line: &[Complex32], from: usize| {
         let span = from..from + line.len();
         let parts = pattern[span.clone()]
             .iter()
             .zip(&deconvolution[span.clone()]);
         for ((field, value), (pattern, factor)) in field[span].iter_mut().zip(line).zip(parts) {
-            *field += value * factor * pattern;
+            let value = value * factor;
+            *field += Complex64::new(f64::from(value.re), f64::from(value.im)) * pattern;
         }
     };
     add(&line[line.len() - centre..], 0);
