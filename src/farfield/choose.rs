@@ -184,7 +184,7 @@ pub fn choose(array: &Array, task: Task, requested: MethodChoice) -> Result<Choi
         MethodChoice::Factored => factored(array, task)
             .ok_or(Refusal {
                 found: "tilts too large for `factored`".to_string(),
-                advice: "its elements' tilts must stay within about half of wavelength/size: take method = \"auto\" or \"sampled\"".to_string(),
+                advice: "it takes tilts up to about a quarter of wavelength/size, fewer with flat facets: take method = \"auto\" or \"sampled\"".to_string(),
             })?
             .if_it_fits(elements),
         MethodChoice::Auto => {

@@ -3,8 +3,8 @@
 //! Irradiance holds no spatial frequency above D/(λ·range), so a map sampled finer
 //! than Nyquist's two pixels a spot determines every value between its pixels. The
 //! kernel is a sinc under the window exp(β(√(1 − (t/6)²) − 1)); it passes the band and
-//! stops its images with an error of about exp(−β/2), 1e-3 at β = 13 being far below
-//! what is measured here: 1e-5 of the peak at four pixels a spot.
+//! stops its images. At four pixels a spot the error measured on an Airy pattern is
+//! about 1e-5 of its peak; at two, where no guard is left, it is some 1e-2 of a width.
 
 use crate::farfield::Map;
 use std::f64::consts::PI;
